@@ -1,0 +1,5 @@
+install(DIRECTORY lib/include/mirrorband DESTINATION ${CMAKE_INSTALL_INCLUDEDIR} FILES_MATCHING PATTERN "*.h")
+configure_file(cmake/mirrorband.pc.in mirrorband.pc @ONLY)
+install(FILES ${CMAKE_CURRENT_BINARY_DIR}/mirrorband.pc DESTINATION ${CMAKE_INSTALL_LIBDIR}/pkgconfig)
+file(GLOB MIRRORBAND_MAN_PAGES CONFIGURE_DEPENDS docs/man/*.1 docs/man/*.5)
+install(FILES ${MIRRORBAND_MAN_PAGES} DESTINATION ${CMAKE_INSTALL_MANDIR}/man1)
