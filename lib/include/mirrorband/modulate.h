@@ -203,9 +203,9 @@ MB_API void mb_diode_pair_destroy(mb_diode_pair *model);
 
 /**
  * From modified Bessel functions: device k gives Is_k exp(zc cos wc t) exp(+-zm u), and
- * exp(z cos x) = I0(z) + 2 sum In(z) cos(n x). Orders above the third are left out, so the equivalent is good
- * while zm = message_peak_v/(n Vt) is at most about 1 (the fourth order is then 0.3 % of the second).
- * Peaks are positive; z up to 40. Thread: any.
+ * exp(z cos x) = I0(z) + 2 sum In(z) cos(n x). Orders above the third are left out: of a
+ * full-scale sine the fifth harmonic I5(zm)/I1(zm), -66 dBc at zm = message_peak_v/(n Vt) = 1, and of unequal
+ * diodes the fourth. Peaks are positive; zc and zm up to 40. Thread: any.
  */
 MB_API mb_equivalent mb_diode_pair_equivalent(const mb_diode_pair_settings *settings, double message_peak_v,
                                               double carrier_peak_v);
