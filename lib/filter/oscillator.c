@@ -1,0 +1,25 @@
+#include "mirrorband/filter.h"
+
+#include <math.h>
+
+void mb_oscillator_set(mb_oscillator *oscillator, double frequency_hz, double rate_hz)
+{
+    double turns = frequency_hz / rate_hz;
+
+    turns -= floor(turns + 0.5);
+    /* 2^63 half turns fit a signed number; the cast then wraps as the phase does */
+    oscillator->step = (uint64_t)(int64_t)llrint(fmax(-0.5, fmin(turns, 0.4999999999999999)) * 0x1.0p64);
+}
+
+void mb_oscillator_rotate(mb_oscillator *oscillator, const mb_cf32 *in, size_t n, mb_cf32 *out)
+{
+    uint64_t phase = oscillator->phase;
+
+    for (size_t i = 0; i < n; i++) {
+        float angle = (float)((double)(int64_t)phase * (2.0 * MB_PI * 0x1.0p-64));
+        float cs = cosf(angle), sn = sinf(angle), re = in[i].re, im = in[i].im;
+        out[i] = (mb_cf32){re * cs - im * sn, re * sn + im * cs};
+        phase += oscillator->step;
+    }
+    oscillator->phase = phase;
+}
