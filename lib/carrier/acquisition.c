@@ -40,22 +40,22 @@ mb_status acquisition_create(const mb_recovery_settings *settings, acquisition *
     return status;
 }
 
-void acquisition_destroy(acquisition *acquisition)
+void acquisition_destroy(acquisition *a)
 {
-    mb_sighter_destroy(acquisition->brief);
-    mb_sighter_destroy(acquisition->lasting);
-    acquisition->brief = acquisition->lasting = NULL;
+    mb_sighter_destroy(a->brief);
+    mb_sighter_destroy(a->lasting);
+    a->brief = a->lasting = NULL;
 }
 
-void acquisition_reset(acquisition *acquisition)
+void acquisition_reset(acquisition *a)
 {
-    acquisition->brief_looks = acquisition->lasting_looks = (agreement){0.0, 0};
-    acquisition->ticks = 0;
+    a->brief_looks = a->lasting_looks = (agreement){0.0, 0};
+    a->ticks = 0;
 }
 
-size_t acquisition_length(const acquisition *acquisition)
+size_t acquisition_length(const acquisition *a)
 {
-    return mb_sighter_length(acquisition->lasting);
+    return mb_sighter_length(a->lasting);
 }
 
 static bool agree(agreement *looks, const mb_sighting *seen, double spread_hz, unsigned needed)
@@ -67,22 +67,22 @@ static bool agree(agreement *looks, const mb_sighting *seen, double spread_hz, u
     return looks->count >= needed;
 }
 
-bool acquisition_look(acquisition *acquisition, const mb_cf32 *end, mb_sighting *found, size_t *length)
+bool acquisition_look(acquisition *a, const mb_cf32 *end, mb_sighting *found, size_t *length)
 {
-    *length = mb_sighter_length(acquisition->brief);
-    *found = mb_sighter_look(acquisition->brief, end - *length);
-    if (agree(&acquisition->brief_looks, found, BRIEF_SPREAD_HZ, BRIEF_LOOKS)) {
+    *length = mb_sighter_length(a->brief);
+    *found = mb_sighter_look(a->brief, end - *length);
+    if (agree(&a->brief_looks, found, BRIEF_SPREAD_HZ, BRIEF_LOOKS)) {
         return true;
     }
-    if (++acquisition->ticks % LASTING_EVERY != 0) {
+    if (++a->ticks % LASTING_EVERY != 0) {
         return false;
     }
-    *length = mb_sighter_length(acquisition->lasting);
-    *found = mb_sighter_look(acquisition->lasting, end - *length);
-    return agree(&acquisition->lasting_looks, found, LASTING_SPREAD_HZ, LASTING_LOOKS);
+    *length = mb_sighter_length(a->lasting);
+    *found = mb_sighter_look(a->lasting, end - *length);
+    return agree(&a->lasting_looks, found, LASTING_SPREAD_HZ, LASTING_LOOKS);
 }
 
-mb_sighting acquisition_check(acquisition *acquisition, const mb_cf32 *end)
+mb_sighting acquisition_check(acquisition *a, const mb_cf32 *end)
 {
-    return mb_sighter_look(acquisition->lasting, end - mb_sighter_length(acquisition->lasting));
+    return mb_sighter_look(a->lasting, end - mb_sighter_length(a->lasting));
 }

@@ -19,19 +19,19 @@ typedef struct acquisition {
 } acquisition;
 
 mb_status acquisition_create(const mb_recovery_settings *settings, acquisition *out);
-void acquisition_destroy(acquisition *acquisition);
-void acquisition_reset(acquisition *acquisition);
+void acquisition_destroy(acquisition *a);
+void acquisition_reset(acquisition *a);
 
 /** Samples of the longest stretch looked at. */
-size_t acquisition_length(const acquisition *acquisition);
+size_t acquisition_length(const acquisition *a);
 
 /**
  * One look, to be called every 20 ms, at the samples that end at `end`. True when enough looks agree; *found
  * then is the sighting and *length its stretch in samples, which ends at `end`.
  */
-bool acquisition_look(acquisition *acquisition, const mb_cf32 *end, mb_sighting *found, size_t *length);
+bool acquisition_look(acquisition *a, const mb_cf32 *end, mb_sighting *found, size_t *length);
 
 /** One long look, for checking a lock. */
-mb_sighting acquisition_check(acquisition *acquisition, const mb_cf32 *end);
+mb_sighting acquisition_check(acquisition *a, const mb_cf32 *end);
 
 #endif

@@ -1,6 +1,7 @@
 #include "mirrorband/carrier.h"
 
 #include <math.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "mirrorband/filter.h"
