@@ -156,7 +156,7 @@ MB_API mb_status mb_emission_create(const mb_emission_settings *settings, mb_emi
 MB_API void mb_emission_process(mb_emission *emission, const mb_cf32 *in, size_t count);
 /**
  * Works out the figures of everything taken so far; more may follow.
- * Errors: NO_SIGNAL (silence, or less than 50 ms), MEMORY. Thread: control.
+ * Errors: NO_SIGNAL (silence, or less than 0.25 s), MEMORY. Thread: control.
  */
 MB_API mb_status mb_emission_finish(const mb_emission *emission, mb_emission_result *result);
 /** The fine spectrum, 0 Hz at the missing carrier; belongs to the emission. For pictures. Thread: control. */
@@ -217,7 +217,7 @@ MB_API mb_status mb_sinad(const mb_spectrum *spectrum, double low_hz, double hig
 typedef struct mb_score mb_score;
 
 typedef struct mb_score_settings {
-    double rate_hz;     /* of both streams, 6000 to 48000; default 8000 */
+    double rate_hz;     /* of both streams, 6000 to 16000; default 8000 */
     double max_delay_s; /* audio may come early or late by this, 0.01 to 4; default 1 */
     double fir_span_s;  /* 0.0005 to 0.006; default 0.006 = 49 taps at 8 kHz */
     double skip_s;      /* of the aligned streams not scored at the start, 0 to 3600; default 0 */
