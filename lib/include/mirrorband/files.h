@@ -418,7 +418,7 @@ typedef struct mb_plot_settings {
 typedef struct mb_plot_axis {
     const char *label; /* such as "frequency"; NULL = none */
     const char *unit;  /* such as "Hz", shown in brackets; NULL = none */
-    double low, high;  /* range shown; both NAN = from the data, widened to whole ticks */
+    double low, high;  /* range shown; both NAN = from the data, y widened to whole ticks */
 } mb_plot_axis;
 
 /** One panel. */
