@@ -9,6 +9,23 @@ static double turns_at(const channel_oscillator *oscillator, uint64_t sample)
     return oscillator->phase_turns + n * oscillator->frequency + 0.5 * n * n * oscillator->drift;
 }
 
+/* a b modulo 1, with the rounding of the product made good. */
+static double product_fraction(double a, double b)
+{
+    double product = a * b;
+
+    return (product - rint(product)) + fma(a, b, -product);
+}
+
+/* The same phase modulo 1, to the last bit also when there are many turns. */
+static double fraction_at(const channel_oscillator *oscillator, uint64_t sample)
+{
+    double n = (double)sample;
+
+    return oscillator->phase_turns + product_fraction(n, oscillator->frequency) +
+           product_fraction(0.5 * n * n, oscillator->drift);
+}
+
 static double complex unit_phasor(double turns)
 {
     double angle = 2.0 * MB_PI * (turns - rint(turns));
@@ -27,7 +44,7 @@ static void set_anchor(channel_oscillator *oscillator)
 {
     double n = (double)oscillator->sample;
 
-    oscillator->phasor = unit_phasor(turns_at(oscillator, oscillator->sample));
+    oscillator->phasor = unit_phasor(fraction_at(oscillator, oscillator->sample));
     oscillator->step = unit_phasor(oscillator->frequency + (n + 0.5) * oscillator->drift);
 }
 
