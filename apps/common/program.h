@@ -43,15 +43,15 @@ typedef enum app_option_kind {
     APP_KEY       /* sets the config key, over file and --set; a bare number is taken in its base unit */
 } app_option_kind;
 
-/** One option of a program's own. */
+/** One option of a program's own; to be written with named fields. */
 typedef struct app_option {
     const char *name;     /* without dashes */
     const char *argument; /* as shown in --help, such as "HZ"; NULL for a flag */
     const char *meaning;  /* one line for --help */
     app_option_kind kind;
+    mb_unit unit;     /* APP_QUANTITY */
     void *target;     /* as the kind says; APP_KEY: unused */
     const char *key;  /* APP_KEY: "section.key" */
-    mb_unit unit;     /* APP_QUANTITY */
     double low, high; /* APP_QUANTITY, APP_WHOLE: range; both 0 = any */
 } app_option;
 

@@ -33,8 +33,9 @@ static size_t random_text(mb_random *random, char *text)
             text[length++] = (char)(mb_random_bits(random) & 0xff);
         } else {
             const char *piece = pieces[mb_random_bits(random) % (sizeof pieces / sizeof pieces[0])];
-            memcpy(text + length, piece, strlen(piece));
-            length += strlen(piece);
+            for (; *piece != '\0'; piece++) {
+                text[length++] = *piece;
+            }
         }
     }
     return length;
