@@ -63,7 +63,7 @@ MB_API mb_status mb_voice_create(const mb_voice_settings *settings, mb_voice **o
  */
 MB_API void mb_voice_process(mb_voice *voice, const float *in, size_t count, float *out);
 
-/** Exact delay of the output in samples, conditioning on or off; 17.9 ms by default. Thread: any. */
+/** Exact delay of the output in samples, conditioning on or off; by default 794, 16.5 ms. Thread: any. */
 MB_API size_t mb_voice_delay_samples(const mb_voice *voice);
 
 /** State after the last sample processed. Thread: stream. */
