@@ -243,7 +243,7 @@ mb_status mb_audio_read(mb_audio_reader *reader, float *out, size_t n, size_t *g
 mb_status mb_audio_rewind(mb_audio_reader *reader)
 {
     mb_status status =
-        reader->sound != NULL ? mb_sound_rewind(reader->sound) : mb_source_seek(reader->source, 0);
+        reader->sound != NULL ? mb_sound_seek(reader->sound, 0) : mb_source_seek(reader->source, 0);
 
     if (status == MB_OK) {
         reader->state = (mb_audio_reader_state){0};

@@ -132,7 +132,7 @@ mb_status mb_iq_read_ci16(mb_iq_reader *reader, mb_ci16 *out, size_t n, size_t *
 mb_status mb_iq_rewind(mb_iq_reader *reader)
 {
     mb_status status =
-        reader->sound != NULL ? mb_sound_rewind(reader->sound) : mb_source_seek(reader->source, 0);
+        reader->sound != NULL ? mb_sound_seek(reader->sound, 0) : mb_source_seek(reader->source, 0);
 
     if (status == MB_OK) {
         reader->state = (mb_iq_reader_state){0};

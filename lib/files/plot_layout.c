@@ -42,7 +42,7 @@ static void add_entry(plot_box *box, const plot_series *series, const char *labe
     }
     plot_entry *entry = &box->entries[box->entry_count++];
     entry->series = series;
-    mb_plot_text_fit(label, LABEL_PX, box->cell_width - 2 * MB_PLOT_SWATCH_PX, entry->text);
+    mb_plot_text_fit(label, LABEL_PX, box->cell_width - 3 * MB_PLOT_SWATCH_PX, entry->text);
     entry->width = MB_PLOT_SWATCH_PX + 6.0 + mb_plot_text_width(entry->text, LABEL_PX);
 }
 
@@ -64,7 +64,7 @@ static size_t flow_entries(plot_box *box, double left, double top)
 
     for (size_t i = 0; i < box->entry_count; i++) {
         plot_entry *entry = &box->entries[i];
-        if (x > left && x + entry->width > box->cell_x + box->cell_width) {
+        if (x > left && x + entry->width > box->cell_x + box->cell_width - RIGHT_PX + 0.5) {
             x = left;
             rows++;
         }
@@ -84,11 +84,11 @@ static void place_header(const plot_panel *panel, plot_box *box)
     for (size_t i = 0; i < box->entry_count; i++) {
         legend_width += box->entries[i].width + (i > 0 ? 16.0 : 0.0);
     }
-    box->legend_beside = title_width + 24.0 + legend_width <= box->cell_width;
+    box->legend_beside = title_width + 24.0 + legend_width <= box->cell_width - RIGHT_PX;
     double top = box->cell_y;
     bool title_line = panel->title[0] != '\0' || (box->legend_beside && box->entry_count > 0);
     if (box->legend_beside) {
-        (void)flow_entries(box, box->cell_x + box->cell_width - legend_width - 0.5, top + 1.0);
+        (void)flow_entries(box, box->cell_x + box->cell_width - RIGHT_PX - legend_width, top + 1.0);
     }
     top += title_line ? 20.0 : 0.0;
     top += panel->note[0] != '\0' ? 17.0 : 0.0;
@@ -126,6 +126,25 @@ static void data_ranges(const plot_panel *panel, double *x, double *y)
     }
 }
 
+static void stretch(plot_scale *scale, double wanted)
+{
+    double more = 0.5 * (wanted - (scale->high - scale->low));
+
+    scale->low -= more;
+    scale->high += more;
+}
+
+/* Dots at the edge are to be seen whole. */
+static bool has_points(const plot_panel *panel)
+{
+    bool points = false;
+
+    for (size_t i = 0; i < panel->series_count; i++) {
+        points = points || panel->series[i].style == MB_PLOT_POINTS;
+    }
+    return points;
+}
+
 static double tick_width(const plot_scale *scale)
 {
     double values[MB_PLOT_TICKS_MAX], widest = 0.0;
@@ -143,14 +162,6 @@ static double tick_width(const plot_scale *scale)
 static double left_margin(const plot_scale *scale)
 {
     return ceil(tick_width(scale)) + 10.0 + (scale->caption[0] != '\0' ? 20.0 : 0.0);
-}
-
-static void stretch(plot_scale *scale, double wanted)
-{
-    double more = 0.5 * (wanted - (scale->high - scale->low));
-
-    scale->low -= more;
-    scale->high += more;
 }
 
 /* Widens the axis that shows too little, so that one unit is equally long on both. */
@@ -178,6 +189,9 @@ static void scale_y(const plot_panel *panel, plot_box *box, double header)
     data_ranges(panel, x, y);
     mb_plot_scale_range(&panel->x, x[0], x[1], &box->x_scale);
     mb_plot_scale_range(&panel->y, y[0], y[1], &box->y_scale);
+    if (has_points(panel) && !(isfinite(panel->x.low) && isfinite(panel->x.high))) {
+        stretch(&box->x_scale, 1.05 * (box->x_scale.high - box->x_scale.low));
+    }
     box->y = box->cell_y + header;
     box->height = box->cell_height - header - (caption ? 42.0 : 24.0);
     mb_plot_scale_ticks(&panel->y, box->height, true, &box->y_scale);

@@ -164,9 +164,20 @@ static bool step_fits(const plot_scale *scale, double length_px, bool vertical)
     return gap_px >= (vertical ? 30.0 : fmax(40.0, widest_label(scale) + 16.0));
 }
 
+/* An x axis from the data that ends just short of a tick is drawn out to it. */
+static void reach_ticks(plot_scale *scale)
+{
+    double slack = 0.03 * (scale->high - scale->low);
+    double below = floor(scale->low / scale->step) * scale->step;
+    double above = ceil(scale->high / scale->step) * scale->step;
+
+    scale->low = scale->low - below <= slack ? below : scale->low;
+    scale->high = above - scale->high <= slack ? above : scale->high;
+}
+
 void mb_plot_scale_ticks(const plot_axis_texts *axis, double length_px, bool vertical, plot_scale *scale)
 {
-    bool widen = vertical && !(isfinite(axis->low) && isfinite(axis->high));
+    bool automatic = !(isfinite(axis->low) && isfinite(axis->high)), widen = automatic && vertical;
     plot_scale tried = *scale;
 
     choose_unit(axis, scale);
@@ -185,4 +196,7 @@ void mb_plot_scale_ticks(const plot_axis_texts *axis, double length_px, bool ver
         }
     }
     *scale = tried;
+    if (automatic && !vertical) {
+        reach_ticks(scale);
+    }
 }

@@ -197,13 +197,13 @@ mb_status mb_sound_read_s16(mb_sound *sound, int16_t *out, size_t n, size_t *got
     return finish_read(sound, n, sf_readf_short(sound->handle, out, (sf_count_t)n), got);
 }
 
-mb_status mb_sound_rewind(mb_sound *sound)
+mb_status mb_sound_seek(mb_sound *sound, uint64_t frame)
 {
-    if (sf_seek(sound->handle, 0, SEEK_SET) != 0) {
-        const char *name = mb_source_name(sound->source);
-        return mb_fail(MB_ERROR_FILE, name, "%s cannot be rewound: %s", name, sf_strerror(sound->handle));
+    if (sf_seek(sound->handle, (sf_count_t)frame, SEEK_SET) != (sf_count_t)frame) {
+        const char *name = sound->source != NULL ? mb_source_name(sound->source) : mb_sink_name(sound->sink);
+        return mb_fail(MB_ERROR_FILE, name, "%s cannot be moved in: %s", name, sf_strerror(sound->handle));
     }
-    sound->frames = 0;
+    sound->frames = frame;
     sound->status = MB_OK;
     return MB_OK;
 }

@@ -26,8 +26,8 @@ SF_INFO mb_sound_info(const mb_sound *sound);
 mb_status mb_sound_read_f32(mb_sound *sound, float *out, size_t n, size_t *got);
 mb_status mb_sound_read_s16(mb_sound *sound, int16_t *out, size_t n, size_t *got);
 
-/** Back to the first frame. Errors: FILE. */
-mb_status mb_sound_rewind(mb_sound *sound);
+/** Goes to a frame, for reading or (leaving a hole) for writing. Errors: FILE. */
+mb_status mb_sound_seek(mb_sound *sound, uint64_t frame);
 
 /**
  * Starts writing: format is one of SF_FORMAT_WAV, _RF64, _FLAC with a sub-format. rate_hz must be whole.
