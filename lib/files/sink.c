@@ -17,7 +17,7 @@ struct mb_sink {
     int fd;
     bool direct;
     bool closed;      /* committed or abandoned */
-    mb_status status; /* of the first failure */
+    mb_fault failure; /* the first one; later calls tell it again */
     char *path;       /* where it goes at last, links followed */
     char *partial;    /* where it grows */
     uint64_t offset;  /* of the first byte in the buffer */
@@ -121,7 +121,7 @@ bool mb_sink_is_direct(const mb_sink *sink)
 
 mb_status mb_sink_status(const mb_sink *sink)
 {
-    return sink->status;
+    return sink->failure.status;
 }
 
 uint64_t mb_sink_size(const mb_sink *sink)
@@ -134,6 +134,12 @@ uint64_t mb_sink_position(const mb_sink *sink)
     return sink->offset + sink->fill;
 }
 
+static mb_status note_failure(mb_sink *sink, mb_status status)
+{
+    sink->failure = *mb_last_fault();
+    return status;
+}
+
 static mb_status write_through(mb_sink *sink, const unsigned char *from, size_t bytes)
 {
     while (bytes > 0) {
@@ -143,8 +149,7 @@ static mb_status write_through(mb_sink *sink, const unsigned char *from, size_t 
             continue;
         }
         if (made < 0) {
-            sink->status = mb_fail_writing(sink->name, errno, sink->offset);
-            return sink->status;
+            return note_failure(sink, mb_fail_writing(sink->name, errno, sink->offset));
         }
         from += made;
         bytes -= (size_t)made;
@@ -155,15 +160,14 @@ static mb_status write_through(mb_sink *sink, const unsigned char *from, size_t 
 
 static mb_status failed_before(const mb_sink *sink)
 {
-    return mb_fail(sink->status, sink->name, "%s cannot be written any more after a failure; start it again",
-                   sink->name);
+    return mb_fail(sink->failure.status, sink->failure.field, "%s", sink->failure.text);
 }
 
 mb_status mb_sink_flush(mb_sink *sink)
 {
     size_t fill = sink->fill;
 
-    if (sink->status != MB_OK) {
+    if (sink->failure.status != MB_OK) {
         return failed_before(sink);
     }
     sink->fill = 0;
@@ -174,7 +178,7 @@ mb_status mb_sink_write(mb_sink *sink, const void *from, size_t bytes)
 {
     mb_status status = MB_OK;
 
-    if (sink->status != MB_OK) {
+    if (sink->failure.status != MB_OK) {
         return failed_before(sink);
     }
     if (sink->fill + bytes > BUFFER_BYTES) {
@@ -217,15 +221,15 @@ mb_status mb_sink_seek(mb_sink *sink, uint64_t offset)
 
 mb_status mb_sink_truncate(mb_sink *sink)
 {
-    if (sink->status != MB_OK) {
+    if (sink->failure.status != MB_OK) {
         return failed_before(sink);
     }
     sink->fill = 0;
     sink->offset = sink->size = 0;
     if (ftruncate(sink->fd, 0) != 0) {
-        sink->status = mb_fail_writing(sink->name, errno, 0);
+        return note_failure(sink, mb_fail_writing(sink->name, errno, 0));
     }
-    return sink->status;
+    return MB_OK;
 }
 
 static int close_descriptor(mb_sink *sink)

@@ -25,7 +25,7 @@ mb_status mb_sink_status(const mb_sink *sink);
 uint64_t mb_sink_size(const mb_sink *sink);
 uint64_t mb_sink_position(const mb_sink *sink);
 
-/** Writes `bytes` at the position. Errors: FILE. After a failure every further write fails. */
+/** Writes `bytes` at the position. Errors: FILE. After a failure every further write fails likewise. */
 mb_status mb_sink_write(mb_sink *sink, const void *from, size_t bytes);
 
 /** printf into the sink. Errors: FILE, MEMORY. */
