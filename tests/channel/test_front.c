@@ -72,7 +72,7 @@ static double quantisation_power(unsigned bits, double amplitude)
 
     settings.quantise_bits = bits;
     mb_channel *channel = channel_of(&settings);
-    fill_tone(in, LONG, 0.0123456789, amplitude);
+    fill_tone(in, LONG, 0.01 * sqrt(3.0), amplitude); /* irrational: no phase comes twice */
     mb_channel_process(channel, in, LONG, out);
     for (size_t n = 0; n < LONG; n++) {
         out[n] = (mb_cf32){out[n].re - in[n].re, out[n].im - in[n].im};
