@@ -129,7 +129,7 @@ static double quadratic_form(const mb_fir_fit *fit)
     return sum;
 }
 
-/* Cholesky factor in place of the lower triangle. The ridge, -110 dB of the message, keeps directions that a
+/* Cholesky factor in place of the lower triangle. The ridge, -130 dB of the message, keeps directions that a
  * band-limited message does not excite from being divided by rounding errors. */
 static void factor(double *matrix, size_t n, double ridge)
 {
@@ -170,7 +170,7 @@ mb_fir_fit_result mb_fir_fit_solve(mb_fir_fit *fit)
         return result;
     }
     fill_matrix(fit);
-    factor(fit->matrix, fit->taps, 1e-11 * fit->row[0]);
+    factor(fit->matrix, fit->taps, 1e-13 * fit->row[0]);
     substitute(fit->matrix, fit->taps, fit->cross, fit->weights);
     fill_matrix(fit); /* again: the factor took its place */
     double explained = 0.0;

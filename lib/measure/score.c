@@ -38,7 +38,7 @@ static size_t taps_of(double span_s, double rate_hz)
 
 static mb_status add_bands(mb_score *score)
 {
-    const double transition_hz = 300.0, attenuation_db = 81.0;
+    const double transition_hz = 309.0, attenuation_db = 81.3;
     mb_fir_settings settings = {0};
     float *taps = NULL;
     mb_status status = mb_design_bandpass(low_hz, high_hz, transition_hz, attenuation_db,
