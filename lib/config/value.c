@@ -44,13 +44,23 @@ static const char *word_of(const config_key *key, const char *text)
     return NULL;
 }
 
-static bool wrong_word(const config_key *key, const char *text, char *wrong, size_t size)
+/* Always false: says what is wrong, then what is allowed. */
+static bool not_allowed(const config_key *key, const char *what, char *wrong, size_t size)
 {
     char allowed[512];
-    const char *nearest = config_word_nearest(key->words, text);
 
     config_value_allowed(key, allowed, sizeof allowed);
-    (void)snprintf(wrong, size, "\"%s\" is not a value of this key; allowed: %s", text, allowed);
+    (void)snprintf(wrong, size, "%s; allowed: %s", what, allowed);
+    return false;
+}
+
+static bool wrong_word(const config_key *key, const char *text, char *wrong, size_t size)
+{
+    char what[CONFIG_VALUE_MAX + 64];
+    const char *nearest = config_word_nearest(key->words, text);
+
+    (void)snprintf(what, sizeof what, "\"%s\" is not a value of this key", text);
+    (void)not_allowed(key, what, wrong, size);
     if (nearest != NULL) {
         config_append(wrong, size, "; nearest: %s", nearest);
     }
@@ -59,20 +69,18 @@ static bool wrong_word(const config_key *key, const char *text, char *wrong, siz
 
 static bool read_quantity(const config_key *key, const char *text, double *number, char *wrong, size_t size)
 {
-    char allowed[512];
+    char what[CONFIG_VALUE_MAX + 64];
 
-    config_value_allowed(key, allowed, sizeof allowed);
     if (mb_quantity_parse(text, key->unit, number) != MB_OK) {
-        (void)snprintf(wrong, size, "%s; allowed: %s", mb_last_fault()->text, allowed);
-        return false;
+        return not_allowed(key, mb_last_fault()->text, wrong, size);
     }
     if (!(*number >= key->low && *number <= key->high)) {
-        (void)snprintf(wrong, size, "\"%s\" is out of range; allowed: %s", text, allowed);
-        return false;
+        (void)snprintf(what, sizeof what, "\"%s\" is out of range", text);
+        return not_allowed(key, what, wrong, size);
     }
     if (key->whole && *number != floor(*number)) {
-        (void)snprintf(wrong, size, "\"%s\" is not a whole number; allowed: %s", text, allowed);
-        return false;
+        (void)snprintf(what, sizeof what, "\"%s\" is not a whole number", text);
+        return not_allowed(key, what, wrong, size);
     }
     return true;
 }
@@ -83,10 +91,7 @@ bool config_value_read(const config_key *key, const char *text, config_value *va
     const char *word = word_of(key, text);
 
     if (text[0] == '\0') {
-        char allowed[512];
-        config_value_allowed(key, allowed, sizeof allowed);
-        (void)snprintf(wrong, size, "no value is given; allowed: %s", allowed);
-        return false;
+        return not_allowed(key, "no value is given", wrong, size);
     }
     if (strlen(text) >= CONFIG_VALUE_MAX) {
         (void)snprintf(wrong, size, "the value is longer than %d characters", CONFIG_VALUE_MAX - 1);

@@ -6,7 +6,7 @@
 #include "mirrorband/config.h"
 #include "text_file.h"
 
-enum { ROUNDS = 4000, TEXT_MAX = 2048, SEED = 20260117 };
+enum { ROUNDS = 3000, TEXT_MAX = 2048, SEED = 20260117 };
 
 static const char *const pieces[] = {
     "[channel]",  "[receive]",
