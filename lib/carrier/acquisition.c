@@ -5,10 +5,10 @@
 /*
  * One sideband alone passes a single short look now and then (0.4 % of 0.2 s looks at twelve voices), because
  * its pitch lines can mirror each other for a moment; but its pitch moves, so such looks do not agree for
- * long. Asking for four short looks in a row within 2.5 Hz, or three long ones within 1 Hz, leaves almost
+ * long. Asking for six short looks in a row within 2.5 Hz, or three long ones within 1 Hz, leaves almost
  * none, and what is left is thrown out by the check of the lock that follows.
  */
-enum { BRIEF_LOOKS = 4, LASTING_LOOKS = 3, LASTING_EVERY = 3 };
+enum { BRIEF_LOOKS = 6, LASTING_LOOKS = 3, LASTING_EVERY = 3 };
 #define BRIEF_S           0.2
 #define LASTING_S         0.6
 #define BRIEF_SPREAD_HZ   2.5
@@ -25,7 +25,7 @@ mb_status acquisition_create(const mb_recovery_settings *settings, acquisition *
     look.high_cut_hz = settings->high_cut_hz;
     look.length_s = BRIEF_S;
     look.coherence_min = 0.4;
-    look.purity_min = 0.88;
+    look.purity_min = 0.9;
     mb_status status = mb_sighter_create(&look, &out->brief);
     if (status != MB_OK) {
         return status;
@@ -82,7 +82,10 @@ bool acquisition_look(acquisition *a, const mb_cf32 *end, mb_sighting *found, si
     return agree(&a->lasting_looks, found, LASTING_SPREAD_HZ, LASTING_LOOKS);
 }
 
-mb_sighting acquisition_check(acquisition *a, const mb_cf32 *end)
+mb_sighting acquisition_check(acquisition *a, const mb_cf32 *end, double offset_hz, mb_sighting *elsewhere)
 {
-    return mb_sighter_look(a->lasting, end - mb_sighter_length(a->lasting));
+    const mb_cf32 *samples = end - mb_sighter_length(a->lasting);
+
+    *elsewhere = mb_sighter_look(a->lasting, samples);
+    return mb_sighter_look_at(a->lasting, samples, offset_hz);
 }

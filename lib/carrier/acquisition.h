@@ -31,7 +31,8 @@ size_t acquisition_length(const acquisition *a);
  */
 bool acquisition_look(acquisition *a, const mb_cf32 *end, mb_sighting *found, size_t *length);
 
-/** One long look, for checking a lock. */
-mb_sighting acquisition_check(acquisition *a, const mb_cf32 *end);
+/** One long look for checking a lock: what there is at offset_hz, and *elsewhere, the best candidate of the
+ * span. */
+mb_sighting acquisition_check(acquisition *a, const mb_cf32 *end, double offset_hz, mb_sighting *elsewhere);
 
 #endif

@@ -9,9 +9,11 @@
 #define HISTORY_S 1.2
 
 enum {
-    SEARCH_EVERY = 2, /* blocks between looks while searching */
-    CHECK_EVERY = 20, /* blocks between checks of a lock */
+    SEARCH_EVERY = 2,    /* blocks between looks while searching */
+    CHECK_EVERY = 20,    /* blocks between checks of a lock */
+    CHECK_NEW_EVERY = 8, /* of one that no check has confirmed yet */
     DOUBTS_TO_LOSE = 5,
+    DOUBTS_TO_LOSE_NEW = 2,
     RIVALS_TO_MOVE = 4
 };
 
@@ -122,6 +124,7 @@ static size_t begin_track(follower *f, const mb_sighting *seen, size_t length)
     mb_phase_predict(&state, &f->settings.noise, back_s);
     f->state = state;
     f->tracking = true;
+    f->confirmed = false;
     f->locks++;
     tracking_begin(f, seen, f->history + f->history_end - length, length);
     double lead = 0.5 * ((double)f->block - 1.0) - (double)f->meter.delay;
@@ -149,25 +152,27 @@ static void stop_track(follower *f)
  */
 static size_t check_lock(follower *f)
 {
-    mb_sighting seen = acquisition_check(&f->acquisition, f->history + f->history_end);
     double tracked_hz = f->state.frequency_rad_s / (2.0 * MB_PI);
-    bool here = fabs(seen.offset_hz - tracked_hz) < 2.5;
+    mb_sighting elsewhere;
+    mb_sighting here =
+        acquisition_check(&f->acquisition, f->history + f->history_end, tracked_hz, &elsewhere);
 
-    if (seen.accepted && here) {
+    if (here.coherence > 0.15 && here.purity > 0.6) {
         f->confirmations++;
+        f->confirmed = true;
         f->doubts = f->rivals = 0;
-    } else if (seen.accepted) {
-        f->rivals = f->rivals > 0 && fabs(seen.offset_hz - f->rival_hz) < 1.5 ? f->rivals + 1 : 1;
-        f->rival_hz = seen.offset_hz;
-    } else if (tracking_quality(f) < 0.5 && f->idle_blocks < CHECK_EVERY) {
+    } else if (elsewhere.accepted && fabs(elsewhere.offset_hz - tracked_hz) > 2.5) {
+        f->rivals = f->rivals > 0 && fabs(elsewhere.offset_hz - f->rival_hz) < 1.5 ? f->rivals + 1 : 1;
+        f->rival_hz = elsewhere.offset_hz;
+    } else if (here.occupied > 0.4 && here.purity < 0.35) {
         f->doubts++;
         f->contradictions++;
     }
     if (f->rivals >= RIVALS_TO_MOVE) {
         stop_track(f);
-        return begin_track(f, &seen, acquisition_length(&f->acquisition));
+        return begin_track(f, &elsewhere, acquisition_length(&f->acquisition));
     }
-    if (f->doubts >= DOUBTS_TO_LOSE) {
+    if (f->doubts >= (f->confirmed ? DOUBTS_TO_LOSE : DOUBTS_TO_LOSE_NEW)) {
         stop_track(f);
     }
     return 1;
@@ -196,7 +201,7 @@ size_t follower_take(follower *f, const mb_cf32 *block)
         return search(f);
     }
     tracking_block(f, f->history + f->history_end - f->block, newest);
-    return f->count % CHECK_EVERY == 0 ? check_lock(f) : 1;
+    return f->count % (f->confirmed ? CHECK_EVERY : CHECK_NEW_EVERY) == 0 ? check_lock(f) : 1;
 }
 
 mb_carrier_state follower_state(const follower *f)

@@ -44,6 +44,7 @@ typedef struct follower {
 
     mb_phase_state state; /* predicted to the middle of the next block when tracking */
     bool tracking;
+    bool confirmed;     /* a check of this lock has found it good */
     bool has_old_state; /* after a loss: old_state still tells which polarity comes nearest */
     mb_phase_state old_state;
     uint64_t old_block;        /* block old_state belongs to */

@@ -10,6 +10,9 @@
 #define FLOOR_QUANTILE       0.25
 #define FLOOR_QUANTILE_VALUE 0.28768207245178085
 
+/* Probability that one look at noise passes for a signal by its coherence. */
+#define FALSE_ALARM 1e-7
+
 struct mb_sighter {
     mb_sighting_settings settings;
     size_t length;     /* samples in a stretch */
@@ -248,30 +251,65 @@ static band_powers measure_band(mb_sighter *s, double offset_hz)
     return powers;
 }
 
-mb_sighting mb_sighter_look(mb_sighter *sighter, const mb_cf32 *samples)
+/*
+ * Coherence that noise of these very powers exceeds in one look out of 10^7: given the powers, its square is
+ * exponential with mean sum (w|x|^2)^2 / (sum w|x|^2)^2, more by the ratio of the rate to the noise
+ * bandwidth, and there are as many chances as independent lines in the span.
+ */
+static double noise_coherence(const mb_sighter *s, const mb_cf32 *samples, double energy)
 {
-    const mb_sighting_settings *settings = &sighter->settings;
-    mb_sighting seen = {0.0, 0.0, 0.0, 0.0, 1.0, 0.0, false};
-    double energy = transform(sighter, samples);
+    const mb_sighting_settings *settings = &s->settings;
+    double fourth = 0.0;
+
+    for (size_t i = 0; i < s->length; i++) {
+        double a = (double)samples[i].re, b = (double)samples[i].im;
+        double power = (double)s->weight[i] * (a * a + b * b);
+        fourth += power * power;
+    }
+    double bandwidth_hz = fmin(2.0 * (settings->high_cut_hz + settings->span_hz), settings->rate_hz);
+    double lines = 4.0 * settings->span_hz * settings->length_s;
+    double mean = fourth / (energy * energy) * settings->rate_hz / bandwidth_hz;
+    return sqrt(mean * log(lines / FALSE_ALARM));
+}
+
+static mb_sighting examine(mb_sighter *s, const mb_cf32 *samples, double energy, double offset_hz)
+{
+    const mb_sighting_settings *settings = &s->settings;
+    mb_sighting seen = {.offset_hz = offset_hz};
     double re, im;
 
-    if (!(energy > 1e-30)) {
-        return seen;
-    }
-    double line_hz = highest_line_hz(sighter);
-    line_sum(sighter, samples, line_hz, &re, &im);
-    seen.offset_hz = 0.5 * line_hz;
+    line_sum(s, samples, 2.0 * offset_hz, &re, &im);
+    band_powers powers = measure_band(s, offset_hz);
+    double line = hypot(re, im), band = fmax(powers.band, 1e-300);
+    double band_energy = fmax(energy * powers.band / powers.total, 1e-300);
     seen.phase_rad = 0.5 * atan2(im, re);
-    band_powers powers = measure_band(sighter, seen.offset_hz);
-    double line = hypot(re, im);
-    double band_energy = energy * powers.band / powers.total;
-    double possible = fmax(1.0 - powers.floor / fmax(powers.band, 1e-300), 0.05);
-    seen.coherence = fmin(line / fmax(band_energy, 1e-300), 1.0);
-    seen.purity = seen.coherence / possible;
-    seen.centre_share = powers.centre / fmax(powers.band, 1e-300);
-    double rest = fmax(band_energy - line, 1e-6 * band_energy);
-    seen.snr_db = mb_power_db(line / rest);
-    seen.accepted = seen.coherence >= settings->coherence_min && seen.purity >= settings->purity_min &&
-                    seen.centre_share <= settings->centre_share_max;
+    seen.occupied = fmax(1.0 - powers.floor / band, 0.0);
+    seen.coherence = fmin(line / band_energy, 1.0);
+    seen.purity = seen.coherence / fmax(seen.occupied, 0.05);
+    seen.centre_share = powers.centre / band;
+    seen.snr_db = mb_power_db(line / fmax(band_energy - line, 1e-6 * band_energy));
+    bool above_noise = line / energy >= noise_coherence(s, samples, energy);
+    seen.accepted = above_noise && seen.coherence >= settings->coherence_min &&
+                    seen.purity >= settings->purity_min && seen.centre_share <= settings->centre_share_max;
     return seen;
+}
+
+mb_sighting mb_sighter_look(mb_sighter *sighter, const mb_cf32 *samples)
+{
+    double energy = transform(sighter, samples);
+
+    if (!(energy > 1e-30)) {
+        return (mb_sighting){.centre_share = 1.0};
+    }
+    return examine(sighter, samples, energy, 0.5 * highest_line_hz(sighter));
+}
+
+mb_sighting mb_sighter_look_at(mb_sighter *sighter, const mb_cf32 *samples, double offset_hz)
+{
+    double energy = transform(sighter, samples);
+
+    if (!(energy > 1e-30)) {
+        return (mb_sighting){.offset_hz = offset_hz, .centre_share = 1.0};
+    }
+    return examine(sighter, samples, energy, offset_hz);
 }

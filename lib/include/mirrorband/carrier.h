@@ -25,6 +25,7 @@ typedef struct mb_sighting {
     double coherence; /* |sum w x^2| / sum w |x|^2, 0 to 1: share of the power that mirrors */
     double purity; /* coherence over what the noise floor beside the voice leaves possible; 1 = all mirrors */
     double centre_share; /* share of the power within 0.8 low_cut of the carrier, where a voice has none */
+    double occupied;     /* share of the power in the band that stands above its noise floor */
     double snr_db;       /* estimate: power that mirrors over the rest, both in 2 x high_cut */
     bool accepted;       /* passes all thresholds for this length: a suppressed-carrier voice */
 } mb_sighting;
@@ -60,6 +61,9 @@ MB_API size_t mb_sighter_length(const mb_sighter *sighter);
  * there). Thread: stream.
  */
 MB_API mb_sighting mb_sighter_look(mb_sighter *sighter, const mb_cf32 *samples);
+
+/** The same tests for a carrier at offset_hz, whatever else there is. Thread: stream. */
+MB_API mb_sighting mb_sighter_look_at(mb_sighter *sighter, const mb_cf32 *samples, double offset_hz);
 
 /** Accepts NULL. Thread: control. */
 MB_API void mb_sighter_destroy(mb_sighter *sighter);
