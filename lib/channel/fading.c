@@ -63,7 +63,7 @@ static double complex path_gain(const channel_fading *fading, unsigned path, dou
         return path == 0 ? 1.0 : 0.0;
     }
     double complex value = fading->moves[path] ? fading_tap_value(&fading->tap[path], at) : 1.0;
-    return CMPLX(fading->amplitude[path] * creal(value), fading->amplitude[path] * cimag(value));
+    return complex_of(fading->amplitude[path] * creal(value), fading->amplitude[path] * cimag(value));
 }
 
 /* The input delay_samples ago. */

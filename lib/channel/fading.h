@@ -2,8 +2,7 @@
 #ifndef CHANNEL_FADING_H
 #define CHANNEL_FADING_H
 
-#include <complex.h>
-
+#include "complex_parts.h"
 #include "gauss.h"
 
 /**
@@ -44,7 +43,8 @@ static inline double complex fading_tap_value(const fading_tap *tap, double at)
 {
     const double *c = (const double *)tap->cubic;
 
-    return CMPLX(c[0] + at * (c[2] + at * (c[4] + at * c[6])), c[1] + at * (c[3] + at * (c[5] + at * c[7])));
+    return complex_of(c[0] + at * (c[2] + at * (c[4] + at * c[6])),
+                      c[1] + at * (c[3] + at * (c[5] + at * c[7])));
 }
 
 /** Two paths, the second behind a delay line. */

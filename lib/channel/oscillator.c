@@ -30,13 +30,7 @@ static double complex unit_phasor(double turns)
 {
     double angle = 2.0 * MB_PI * (turns - rint(turns));
 
-    return CMPLX(cos(angle), sin(angle));
-}
-
-/* Not the operator *, which looks for infinities in each product. */
-static double complex times(double complex a, double complex b)
-{
-    return CMPLX(creal(a) * creal(b) - cimag(a) * cimag(b), creal(a) * cimag(b) + cimag(a) * creal(b));
+    return complex_of(cos(angle), sin(angle));
 }
 
 /* From sample n to n + 1 the phase moves by f + (n + 1/2) d. */
@@ -70,8 +64,8 @@ void channel_oscillator_jump(channel_oscillator *oscillator, uint64_t sample)
     oscillator->sample = sample - sample % OSCILLATOR_ANCHOR;
     set_anchor(oscillator);
     while (oscillator->sample < sample) {
-        oscillator->phasor = times(oscillator->phasor, oscillator->step);
-        oscillator->step = times(oscillator->step, oscillator->bend);
+        oscillator->phasor = complex_times(oscillator->phasor, oscillator->step);
+        oscillator->step = complex_times(oscillator->step, oscillator->bend);
         oscillator->sample++;
     }
 }
@@ -83,8 +77,8 @@ static void make_plain(channel_oscillator *oscillator, size_t count, double comp
 
     for (size_t i = 0; i < count; i++) {
         out[i] = phasor;
-        phasor = times(phasor, step);
-        step = times(step, oscillator->bend);
+        phasor = complex_times(phasor, step);
+        step = complex_times(step, oscillator->bend);
     }
     oscillator->phasor = phasor;
     oscillator->step = step;
@@ -99,7 +93,7 @@ static void add_noise(channel_oscillator *oscillator, size_t count, double compl
                 oscillator->noise_sigma * channel_gauss_draw(oscillator->gauss, &oscillator->random);
         }
         double angle = oscillator->noise_rad;
-        out[i] = times(out[i], CMPLX(cos(angle), sin(angle)));
+        out[i] = complex_times(out[i], complex_of(cos(angle), sin(angle)));
     }
 }
 

@@ -2,8 +2,7 @@
 #ifndef CHANNEL_OSCILLATOR_H
 #define CHANNEL_OSCILLATOR_H
 
-#include <complex.h>
-
+#include "complex_parts.h"
 #include "gauss.h"
 
 /**

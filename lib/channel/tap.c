@@ -32,7 +32,7 @@ void fading_fir_design(double rate_hz, double spread_hz, double *fir, size_t len
     double scale = fir_scale(rate_hz, spread_hz), energy = 0.0;
 
     for (size_t i = 0; i < length; i++) {
-        double x = scale * ((double)i - (double)(length / 2));
+        double x = scale * ((double)i - 0.5 * (double)(length - 1));
         fir[i] = exp(-x * x);
         energy += fir[i] * fir[i];
     }
@@ -47,7 +47,7 @@ static double complex draw(fading_tap *tap)
     double re = channel_gauss_draw(tap->gauss, &tap->random);
     double im = channel_gauss_draw(tap->gauss, &tap->random);
 
-    return CMPLX(re * sqrt(0.5), im * sqrt(0.5));
+    return complex_of(re * sqrt(0.5), im * sqrt(0.5));
 }
 
 double complex fading_tap_node(fading_tap *tap)

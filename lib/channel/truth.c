@@ -28,18 +28,15 @@ static double best_phase(double complex a, double complex b, double mean)
 double mb_fading_phase(const double path_re[2], const double path_im[2], double delay_s, double low_hz,
                        double high_hz)
 {
-    return best_phase(CMPLX(path_re[0], path_im[0]), CMPLX(path_re[1], path_im[1]),
+    return best_phase(complex_of(path_re[0], path_im[0]), complex_of(path_re[1], path_im[1]),
                       mean_cosine(delay_s, low_hz, high_hz));
 }
 
 /* Gains of the paths at the sample processed last, as seen at the suppressed carrier. */
 static void gains_at_carrier(const mb_channel *channel, double complex gain[2])
 {
-    double complex turn = channel->delay_turn;
-
     channel_fading_gains(&channel->fading, gain);
-    gain[1] = CMPLX(creal(gain[1]) * creal(turn) - cimag(gain[1]) * cimag(turn),
-                    creal(gain[1]) * cimag(turn) + cimag(gain[1]) * creal(turn));
+    gain[1] = complex_times(gain[1], channel->delay_turn);
 }
 
 static double unwrapped(double phase, double near)
@@ -58,7 +55,7 @@ void channel_truth_prepare(mb_channel *channel)
     double delay_s = (double)channel->fading.delay_samples / settings->rate_hz;
     double angle = -2.0 * MB_PI * settings->carrier_hz * delay_s;
 
-    channel->delay_turn = CMPLX(cos(angle), sin(angle));
+    channel->delay_turn = complex_of(cos(angle), sin(angle));
     channel->spectrum_mean = mean_cosine(delay_s, settings->message_low_hz, settings->audio_bandwidth_hz);
 }
 
@@ -126,9 +123,7 @@ mb_truth mb_channel_truth(const mb_channel *channel)
 
     gains_at_carrier(channel, gain);
     double cross = creal(gain[0]) * creal(gain[1]) + cimag(gain[0]) * cimag(gain[1]);
-    double power = creal(gain[0]) * creal(gain[0]) + cimag(gain[0]) * cimag(gain[0]) +
-                   creal(gain[1]) * creal(gain[1]) + cimag(gain[1]) * cimag(gain[1]) +
-                   2.0 * channel->spectrum_mean * cross;
+    double power = complex_square(gain[0]) + complex_square(gain[1]) + 2.0 * channel->spectrum_mean * cross;
     double time_s = (double)sample / settings->rate_hz;
     return (mb_truth){
         .sample = sample,

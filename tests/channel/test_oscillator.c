@@ -80,13 +80,13 @@ static void frequency_moves_with_the_drift(void **state)
     (void)state;
     channel_gauss_prepare(&gauss);
     channel_oscillator oscillator = oscillator_of(&plan, &gauss);
-    for (double at_s = 0.0; at_s < 60.0; at_s += 7.0) {
-        channel_oscillator_jump(&oscillator, (uint64_t)(at_s * 8e3));
+    for (uint64_t at_s = 0; at_s < 60; at_s += 7) {
+        channel_oscillator_jump(&oscillator, at_s * 8000);
         channel_oscillator_make(&oscillator, 2, phasor);
         double complex step = phasor[1] * conj(phasor[0]);
         double frequency_hz = atan2(cimag(step), creal(step)) / (2.0 * MB_PI) * 8e3;
         /* the step lies half a sample later */
-        assert_near(frequency_hz, -50.0 + 5.0 * (at_s + 0.5 / 8e3), 1e-9);
+        assert_near(frequency_hz, -50.0 + 5.0 * ((double)at_s + 0.5 / 8e3), 1e-9);
     }
 }
 

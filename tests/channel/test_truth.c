@@ -1,7 +1,7 @@
 /* The truth is what was done: undoing it gives the message back. */
 #include "samples.h"
 
-enum { SEED = 77, COUNT = 96000 };
+enum { SEED = 77, COUNT = 96000, STEP_AT = 24000, GAP_FROM = 40000, GAP_TO = 44000 };
 
 /* Truth of every sample, kept by a callback. */
 typedef struct truth_log {
@@ -81,22 +81,22 @@ static void derotating_by_the_truth_gives_the_message_back(void **state)
     print_message("seed %d\n", SEED);
     settings.paths = 1;
     settings.doppler_spread_hz = 2.0;
-    settings.level_step_at_s = 3.0;
+    settings.level_step_at_s = STEP_AT / 8e3;
     settings.level_step_db = 10.0;
-    settings.gap_at_s = 5.0;
-    settings.gap_length_s = 0.5;
+    settings.gap_at_s = GAP_FROM / 8e3;
+    settings.gap_length_s = (GAP_TO - GAP_FROM) / 8e3;
     mb_channel *channel = channel_of(&settings);
     fill_message(message, COUNT);
     mb_channel_set_truth_callback(channel, 1, keep, &log);
     mb_channel_process(channel, message, COUNT, heard);
     assert_int_equal(log.count, COUNT);
     assert_at_most(worst_after_undoing(message, heard, &log), -130.0);
-    for (size_t n = 5 * 8000; n < 5 * 8000 + 4000; n++) {
+    for (size_t n = GAP_FROM; n < GAP_TO; n++) {
         assert_true(heard[n].re == 0.0f && heard[n].im == 0.0f && log.rows[n].gain_db == -400.0);
     }
-    assert_near(log.rows[5 * 8000 - 1].gain_db, 7.0, 1e-12);
-    assert_near(log.rows[3 * 8000 - 1].gain_db, -3.0, 1e-12);
-    assert_near(log.rows[5 * 8000 + 4000].gain_db, 7.0, 1e-12);
+    assert_near(log.rows[GAP_FROM - 1].gain_db, 7.0, 1e-12);
+    assert_near(log.rows[STEP_AT - 1].gain_db, -3.0, 1e-12);
+    assert_near(log.rows[GAP_TO].gain_db, 7.0, 1e-12);
     mb_channel_destroy(channel);
     free(log.rows);
     free(message);
