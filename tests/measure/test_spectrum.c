@@ -51,7 +51,7 @@ static void a_line_keeps_to_its_lobe(void **state)
     mb_spectrum_info info = mb_spectrum_state(spectrum);
     assert_ok(mb_spectrum_power(spectrum, power));
     for (int i = 0; i < LENGTH; i++) {
-        double hz = (i - LENGTH / 2) * info.step_hz;
+        double hz = ((double)i - LENGTH / 2.0) * info.step_hz;
         bool near = fabs(hz - 1003.7) <= info.lobe_hz;
         inside += near ? power[i] : 0.0;
         beyond = !near && power[i] > beyond ? power[i] : beyond;

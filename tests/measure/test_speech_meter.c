@@ -7,15 +7,15 @@
 
 #include <sndfile.h>
 
-enum { RATE = 8000, SECONDS = 20 };
+enum { RATE = 8000, SECONDS = 20, COUNT = RATE * SECONDS };
 
 /* 0.5 sin at 1 kHz, on during the first second of every period seconds. */
 static float *keyed_sine(int period_s)
 {
-    float *samples = mb_allocate(RATE * SECONDS, sizeof *samples);
+    float *samples = mb_allocate(COUNT, sizeof *samples);
 
     assert_non_null(samples);
-    for (int i = 0; i < RATE * SECONDS; i++) {
+    for (int i = 0; i < COUNT; i++) {
         bool on = i / RATE % period_s == 0;
         samples[i] = on ? (float)(0.5 * sin(2.0 * MB_PI * 1000.0 / RATE * i)) : 0.0f;
     }
@@ -45,7 +45,7 @@ static void sine_bursts_have_the_level_of_the_recommendation(void **state)
     (void)state;
     for (int i = 0; i < 3; i++) {
         float *samples = keyed_sine(periods[i]);
-        mb_speech_meter_result result = level_of(samples, RATE * SECONDS, RATE);
+        mb_speech_meter_result result = level_of(samples, COUNT, RATE);
         mb_release(samples);
         assert_near(result.active_level_db, facts[i][0], 0.1);
         assert_near(result.activity, facts[i][1], 0.01);
@@ -105,17 +105,17 @@ static void recorded_speech_has_the_level_of_a_second_implementation(void **stat
 static void level_moves_with_the_gain_over_140_decibels(void **state)
 {
     float *samples = keyed_sine(2);
-    double level = level_of(samples, RATE * SECONDS, RATE).active_level_db;
+    double level = level_of(samples, COUNT, RATE).active_level_db;
 
     (void)state;
     static const double factors[] = {0x1p-12, 0x1p-12, 0.7};
     static const double tolerance_db[] = {1e-4, 1e-4, 0.1};
     for (int step = 0; step < 3; step++) {
-        for (int i = 0; i < RATE * SECONDS; i++) {
+        for (int i = 0; i < COUNT; i++) {
             samples[i] *= (float)factors[step];
         }
         level += 20.0 * log10(factors[step]);
-        assert_near(level_of(samples, RATE * SECONDS, RATE).active_level_db, level, tolerance_db[step]);
+        assert_near(level_of(samples, COUNT, RATE).active_level_db, level, tolerance_db[step]);
     }
     mb_release(samples);
 }
@@ -124,19 +124,19 @@ static void level_moves_with_the_gain_over_140_decibels(void **state)
 static void a_carrier_does_not_change_the_level(void **state)
 {
     float *samples = keyed_sine(2);
-    mb_cf32 *turned = mb_allocate(RATE * SECONDS, sizeof *turned);
+    mb_cf32 *turned = mb_allocate(COUNT, sizeof *turned);
     mb_speech_meter *meter = NULL;
 
     (void)state;
     assert_non_null(turned);
-    for (int i = 0; i < RATE * SECONDS; i++) {
+    for (int i = 0; i < COUNT; i++) {
         double phase = 1e-3 * i + 0.3;
         turned[i] = (mb_cf32){(float)(samples[i] * cos(phase)), (float)(samples[i] * sin(phase))};
     }
     assert_ok(mb_speech_meter_create(RATE, &meter));
-    mb_speech_meter_process_cf32(meter, turned, RATE * SECONDS);
+    mb_speech_meter_process_cf32(meter, turned, COUNT);
     assert_near(mb_speech_meter_state(meter).active_level_db,
-                level_of(samples, RATE * SECONDS, RATE).active_level_db, 1e-4);
+                level_of(samples, COUNT, RATE).active_level_db, 1e-4);
     mb_speech_meter_destroy(meter);
     mb_release(turned);
     mb_release(samples);
@@ -146,13 +146,13 @@ static void cuts_and_a_reset_change_nothing(void **state)
 {
     float *samples = keyed_sine(2);
     mb_speech_meter *meter = NULL;
-    double level = level_of(samples, RATE * SECONDS, RATE).active_level_db;
+    double level = level_of(samples, COUNT, RATE).active_level_db;
 
     (void)state;
     assert_ok(mb_speech_meter_create(RATE, &meter));
     mb_speech_meter_process_f32(meter, samples, 12345);
     mb_speech_meter_reset(meter);
-    for (size_t i = 0; i < RATE * SECONDS; i += 64) {
+    for (size_t i = 0; i < COUNT; i += 64) {
         mb_speech_meter_process_f32(meter, samples + i, 64);
     }
     assert_true(mb_speech_meter_state(meter).active_level_db == level);

@@ -129,7 +129,7 @@ def score_rows():
                                              (40, 37, 0, 0), (20, 37, 4.25, 0)):
         message, audio, gain, _ = score_material(noise_db, delay, flip_at, skip_s)
         snr, lag, changes, median, worst, segments = output_snr(message, audio, SCORE_RATE, skip_s)
-        rows.append((delay, float(flip_at), float(skip_s), gain, snr, lag, changes, median, worst, segments))
+        rows.append((delay, lag, changes, segments, float(flip_at), float(skip_s), gain, snr, median, worst))
     return rows
 
 
@@ -150,7 +150,7 @@ def main():
     band = score_material(0, 0, 0, 0, 1)[3]
     print("static const double score_band[201] = {%s};\n" % ", ".join("%.17g" % v for v in band))
     print("/* delay in samples, time of the polarity flip, skip, gain of the noise; then least squares over the whole matrix */")
-    print_rows("score_rows", "int delay; double flip_at_s, skip_s, noise_gain, snr_db; int lag, changes; double median_db, worst_db; int segments", score_rows())
+    print_rows("score_rows", "int delay, lag, changes, segments; double flip_at_s, skip_s, noise_gain, snr_db, median_db, worst_db", score_rows())
     print("#endif\n")
     print("#endif")
 
