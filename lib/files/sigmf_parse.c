@@ -4,7 +4,7 @@
 
 #include <ctype.h>
 #include <jansson.h>
-#include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 static const char *const DATATYPES[] = {NULL, "cf32_le", "ci16_le", "ci8", "cu8"};
@@ -46,7 +46,9 @@ static mb_status number(const json_t *object, const place *at, const char *key, 
     }
     double found = json_number_value(item);
     if (!(found >= low && found <= high)) {
-        return wrong(at, key, "is out of its range");
+        char what[64];
+        (void)snprintf(what, sizeof what, "must be %g to %g", low, high);
+        return wrong(at, key, what);
     }
     *value = found;
     return MB_OK;

@@ -8,13 +8,16 @@ enum { LOOK_BYTES = 64 };
 
 static bool is_text(const unsigned char *bytes, size_t count)
 {
+    size_t plain = 0;
+
     for (size_t i = 0; i < count; i++) {
         bool space = bytes[i] == '\n' || bytes[i] == '\r' || bytes[i] == '\t';
         if (!space && (bytes[i] < 0x20 || bytes[i] == 0x7f)) {
             return false;
         }
+        plain += bytes[i] < 0x80 ? 1 : 0;
     }
-    return count > 0;
+    return count > 0 && 2 * plain > count;
 }
 
 static bool begins(const unsigned char *bytes, size_t count, const char *word)
@@ -50,8 +53,7 @@ mb_status mb_sniff_raw(mb_source *source, const char *kind)
     if (status == MB_OK && found != NULL) {
         const char *remedy = strcmp(found, "JSON") == 0 ? "give the .sigmf-meta or the samples themselves"
                                                         : "give it the ending of its kind";
-        return mb_fail(MB_ERROR_FORMAT, name, "%s is a %s file, not raw %s samples; %s", name, found, kind,
-                       remedy);
+        return mb_fail(MB_ERROR_FORMAT, name, "%s is %s, not raw %s samples; %s", name, found, kind, remedy);
     }
     return status;
 }
@@ -136,7 +138,7 @@ mb_status mb_sniff_sound(mb_source *source, bool flac)
         return MB_OK;
     }
     if (kind == NULL) {
-        kind = is_text(bytes, count) ? "text" : "something else";
+        kind = is_text(bytes, count) ? "text" : "of a kind not known here";
     }
     return mb_fail(MB_ERROR_FORMAT, name, "%s is not %s but %s; convert it or give it the ending of its kind",
                    name, wanted, kind);

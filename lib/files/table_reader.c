@@ -147,7 +147,8 @@ static mb_status missing_column(const mb_table_reader *reader, const char *wante
         int made = snprintf(there + used, sizeof there - used, " %s", reader->names[i]);
         used += made > 0 ? (size_t)made : 0;
     }
-    return mb_fail(MB_ERROR_FORMAT, name, "%s has no column %s; its columns are%s", name, wanted, there);
+    return mb_fail(MB_ERROR_FORMAT, name, "%s has no column %s; give a table that has it, this one has%s",
+                   name, wanted, there);
 }
 
 static mb_status choose_columns(mb_table_reader *reader, const char *const *columns, size_t count)
