@@ -54,6 +54,9 @@ struct mb_plot {
 
 /* ---- text ---- */
 
+/** How much wider bold text is. */
+#define MB_PLOT_BOLD 1.12
+
 /** Width in px that a text takes at most in the fonts named by the style sheet. */
 double mb_plot_text_width(const char *text, double size_px);
 

@@ -78,7 +78,7 @@ static size_t flow_entries(plot_box *box, double left, double top)
 /* Title, note and legend from top to bottom; the legend beside the title if there is room for it. */
 static void place_header(const plot_panel *panel, plot_box *box)
 {
-    double title_width = mb_plot_text_width(panel->title, TITLE_PX), legend_width = 0.0;
+    double title_width = mb_plot_text_width(panel->title, TITLE_PX * MB_PLOT_BOLD), legend_width = 0.0;
 
     collect_entries(panel, box);
     for (size_t i = 0; i < box->entry_count; i++) {

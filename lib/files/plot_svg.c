@@ -162,8 +162,8 @@ static mb_status put_swatch(mb_sink *sink, const plot_entry *entry)
 
 static mb_status put_header(mb_sink *sink, const plot_panel *panel, const plot_box *box)
 {
-    mb_status status =
-        put_fitted(sink, "h3", 14.0, box->cell_x, box->cell_y + 14.0, box->cell_width, panel->title);
+    mb_status status = put_fitted(sink, "h3", 14.0 * MB_PLOT_BOLD, box->cell_x, box->cell_y + 14.0,
+                                  box->cell_width, panel->title);
     double title_height =
         panel->title[0] != '\0' || (box->legend_beside && box->entry_count > 0) ? 20.0 : 0.0;
 
@@ -281,7 +281,8 @@ static mb_status put_heading(mb_sink *sink, const mb_plot *plot, const plot_layo
                                layout->height);
     }
     if (status == MB_OK) {
-        status = put_fitted(sink, "h1", 19.0, MB_PLOT_MARGIN_PX, top + 17.0, width, plot->title);
+        status =
+            put_fitted(sink, "h1", 19.0 * MB_PLOT_BOLD, MB_PLOT_MARGIN_PX, top + 17.0, width, plot->title);
     }
     top += plot->title[0] != '\0' ? 28.0 : 0.0;
     return status == MB_OK

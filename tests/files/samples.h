@@ -39,9 +39,10 @@ static inline mb_cf32 *make_samples(size_t n, uint64_t seed)
     return samples;
 }
 
-/** Writes bytes to a file. */
+/** Writes bytes to a new file (writing over an old one makes some file systems wait for the disk). */
 static inline void put_file(const char *path, const void *bytes, size_t count)
 {
+    (void)remove(path);
     FILE *file = fopen(path, "wb");
 
     assert_non_null(file);
