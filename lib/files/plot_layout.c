@@ -5,7 +5,7 @@
 #include <math.h>
 #include <string.h>
 
-enum { LABEL_PX = 12, TITLE_PX = 14, RIGHT_PX = 18 };
+enum { LABEL_PX = 12, TITLE_PX = 14, RIGHT_PX = 18, LEAST_AREA_PX = 130 };
 
 /* ---- cells --------------------------------------------------------------------------------------------- */
 
@@ -24,10 +24,7 @@ static size_t place_cells(const mb_plot *plot, plot_layout *layout)
         box->row = row;
         box->column = column;
         box->cell_width = (double)span * plot->panel_width_px + (double)(span - 1) * MB_PLOT_GAP_PX;
-        box->cell_height = plot->panel_height_px;
         box->cell_x = MB_PLOT_MARGIN_PX + (double)column * (plot->panel_width_px + MB_PLOT_GAP_PX);
-        box->cell_y =
-            MB_PLOT_MARGIN_PX + layout->heading + (double)row * (plot->panel_height_px + MB_PLOT_GAP_PX);
         column += span;
     }
     return row + 1;
@@ -78,6 +75,7 @@ static size_t flow_entries(plot_box *box, double left, double top)
 /* Title, note and legend from top to bottom; the legend beside the title if there is room for it. */
 static void place_header(const plot_panel *panel, plot_box *box)
 {
+    box->entry_count = 0;
     double title_width = mb_plot_text_width(panel->title, TITLE_PX * MB_PLOT_BOLD), legend_width = 0.0;
 
     collect_entries(panel, box);
@@ -207,17 +205,35 @@ static void scale_x(const plot_panel *panel, plot_box *box, double left)
     }
 }
 
-/* Headers of a row are made equally high and margins of a column equally wide, so that plot areas line up. */
-static void line_up(const mb_plot *plot, plot_layout *layout)
+/* Headers of a row are made equally high; a row is higher than asked for if a long legend needs it. */
+static double stack_rows(const mb_plot *plot, plot_layout *layout, size_t rows)
 {
-    for (size_t i = 0; i < plot->panel_count; i++) {
+    double top = MB_PLOT_MARGIN_PX + layout->heading;
+
+    for (size_t row = 0; row < rows; row++) {
         double header = 0.0;
-        for (size_t k = 0; k < plot->panel_count; k++) {
-            header =
-                layout->boxes[k].row == layout->boxes[i].row ? fmax(header, layout->boxes[k].header) : header;
+        for (size_t i = 0; i < plot->panel_count; i++) {
+            if (layout->boxes[i].row == row) {
+                layout->boxes[i].cell_y = top;
+                place_header(plot->panels[i], &layout->boxes[i]);
+                header = fmax(header, layout->boxes[i].header);
+            }
         }
-        scale_y(plot->panels[i], &layout->boxes[i], header);
+        double height = fmax(plot->panel_height_px, header + LEAST_AREA_PX);
+        for (size_t i = 0; i < plot->panel_count; i++) {
+            if (layout->boxes[i].row == row) {
+                layout->boxes[i].cell_height = height;
+                scale_y(plot->panels[i], &layout->boxes[i], header);
+            }
+        }
+        top += height + (row + 1 < rows ? MB_PLOT_GAP_PX : 0.0);
     }
+    return top;
+}
+
+/* Margins of a column are made equally wide, so that plot areas line up. */
+static void line_up_columns(const mb_plot *plot, plot_layout *layout)
+{
     for (size_t i = 0; i < plot->panel_count; i++) {
         double left = 0.0;
         for (size_t k = 0; k < plot->panel_count; k++) {
@@ -237,14 +253,10 @@ mb_status mb_plot_arrange(const mb_plot *plot, plot_layout *layout)
     }
     layout->heading = (plot->title[0] != '\0' ? 28.0 : 0.0) + (plot->subtitle[0] != '\0' ? 20.0 : 0.0);
     layout->heading += layout->heading > 0.0 ? 10.0 : 0.0;
-    double rows = (double)place_cells(plot, layout), columns = (double)plot->columns;
+    double columns = (double)plot->columns;
     layout->width =
         2.0 * MB_PLOT_MARGIN_PX + columns * plot->panel_width_px + (columns - 1.0) * MB_PLOT_GAP_PX;
-    layout->height = 2.0 * MB_PLOT_MARGIN_PX + layout->heading + rows * plot->panel_height_px +
-                     (rows - 1.0) * MB_PLOT_GAP_PX;
-    for (size_t i = 0; i < plot->panel_count; i++) {
-        place_header(plot->panels[i], &layout->boxes[i]);
-    }
-    line_up(plot, layout);
+    layout->height = stack_rows(plot, layout, place_cells(plot, layout)) + MB_PLOT_MARGIN_PX;
+    line_up_columns(plot, layout);
     return MB_OK;
 }

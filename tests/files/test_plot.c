@@ -188,6 +188,30 @@ static void figures_are_written(void **state)
     mb_plot_destroy(NULL);
 }
 
+static void a_long_legend_makes_its_panel_higher(void **state)
+{
+    mb_plot_settings settings = {
+        .title = "All receivers", .columns = 1, .panel_width_px = 240, .panel_height_px = 160};
+    mb_plot_panel_settings panel = mb_plot_panel_settings_default();
+    mb_plot_series series = mb_plot_series_default();
+    const double x[2] = {0.0, 1.0};
+    mb_plot *plot = NULL;
+
+    (void)state;
+    assert_ok(mb_plot_create(&settings, &plot));
+    assert_ok(mb_plot_panel(plot, &panel));
+    series.label = "a receiver with a name";
+    series.x = series.y = x;
+    series.count = 2;
+    for (int i = 0; i < MB_PLOT_SERIES_MAX; i++) {
+        assert_ok(mb_plot_add(plot, &series));
+    }
+    assert_fault(mb_plot_add(plot, &series), MB_ERROR_ARGUMENT, "series");
+    assert_ok(mb_plot_panel(plot, &panel));
+    assert_ok(mb_plot_write(plot, path_in("legend.svg")));
+    mb_plot_destroy(plot);
+}
+
 static void settings_are_checked(void **state)
 {
     mb_plot_settings settings = mb_plot_settings_default();
@@ -229,6 +253,7 @@ int main(void)
         cmocka_unit_test(a_long_line_keeps_its_extremes),
         cmocka_unit_test(texts_are_cut_whole_and_escaped),
         cmocka_unit_test(figures_are_written),
+        cmocka_unit_test(a_long_legend_makes_its_panel_higher),
         cmocka_unit_test(settings_are_checked),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
