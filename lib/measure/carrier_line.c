@@ -1,7 +1,8 @@
 #include "carrier_line.h"
 
+#include "noise_floor.h"
+
 #include <math.h>
-#include <stdlib.h>
 
 /* A line of power P puts P into the bins of one main lobe; noise puts the same mean into every bin. The floor
  * is the median of the bins beside the lobe (voice begins far beyond, and a hum line there does not move a
@@ -9,13 +10,6 @@
  * deviations. */
 
 static const double search_hz = 2.0, believed_deviations = 4.0, bound_deviations = 2.0;
-
-static int by_value(const void *a, const void *b)
-{
-    double left = *(const double *)a, right = *(const double *)b;
-
-    return (left > right) - (left < right);
-}
 
 typedef struct neighbourhood {
     const double *power;
@@ -26,8 +20,7 @@ typedef struct neighbourhood {
     double averages;   /* independent stretches behind each bin, about */
 } neighbourhood;
 
-/* Mean of a floor bin from the median of those on both sides. The median of an average of K exponentials lies
- * at (1 - 1/(9 K))^3 of their mean (Wilson and Hilferty 1931). */
+/* The floor from the bins on both sides. */
 static mb_status floor_of(const neighbourhood *zone, double from_hz, double to_hz, double *level)
 {
     size_t from = (size_t)ceil(from_hz / zone->step_hz), to = (size_t)floor(to_hz / zone->step_hz), count = 0;
@@ -44,8 +37,7 @@ static mb_status floor_of(const neighbourhood *zone, double from_hz, double to_h
         side[count++] = zone->power[zone->centre + i];
         side[count++] = zone->power[zone->centre - i];
     }
-    qsort(side, count, sizeof *side, by_value);
-    *level = side[count / 2] / pow(1.0 - 1.0 / (9.0 * zone->averages), 3.0);
+    *level = mb_noise_floor(side, count, zone->averages);
     mb_release(side);
     return MB_OK;
 }

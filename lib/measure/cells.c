@@ -1,5 +1,7 @@
 #include "cells.h"
 
+#include "noise_floor.h"
+
 #include <math.h>
 
 static double middle_of(const mb_cell *cell)
@@ -58,6 +60,43 @@ mb_status mb_cells_join(const mb_spectrum *fine, double fine_edge_hz, const mb_s
         out->cell = NULL;
     }
     return status;
+}
+
+mb_status mb_cells_noise(const mb_cells *cells, double inner_hz, double outer_hz, double averages,
+                         double *density)
+{
+    size_t count = 0;
+    double *values = mb_allocate(cells->count, sizeof *values);
+
+    if (values == NULL) {
+        return mb_fail(MB_ERROR_MEMORY, "", "no memory for the noise of %zu cells", cells->count);
+    }
+    for (size_t i = 0; i < cells->count; i++) {
+        double distance = fabs(middle_of(&cells->cell[i]));
+        if (distance > inner_hz && distance < outer_hz) {
+            values[count++] = cells->cell[i].power / cells->cell[i].width_hz;
+        }
+    }
+    *density = mb_noise_floor(values, count, averages);
+    mb_release(values);
+    return MB_OK;
+}
+
+mb_status mb_cells_above_noise(const mb_cells *cells, double half_hz, double density, mb_cells *out)
+{
+    out->count = 0;
+    out->cell = mb_allocate(cells->count, sizeof *out->cell);
+    if (out->cell == NULL) {
+        return mb_fail(MB_ERROR_MEMORY, "", "no memory for %zu cells", cells->count);
+    }
+    for (size_t i = 0; i < cells->count; i++) {
+        mb_cell cell = cells->cell[i];
+        if (fabs(middle_of(&cell)) <= half_hz) {
+            cell.power -= density * cell.width_hz;
+            out->cell[out->count++] = cell;
+        }
+    }
+    return MB_OK;
 }
 
 /* First cell that ends above a frequency. */

@@ -19,6 +19,16 @@ typedef struct mb_cells {
 mb_status mb_cells_join(const mb_spectrum *fine, double fine_edge_hz, const mb_spectrum *wide,
                         double wide_centre_hz, mb_cells *out);
 
+/*
+ * Mean density, per Hz, of the noise between inner_hz and outer_hz on both sides; averages: independent
+ * stretches behind each cell. 0 when there are no cells.
+ */
+mb_status mb_cells_noise(const mb_cells *cells, double inner_hz, double outer_hz, double averages,
+                         double *density);
+
+/* The cells within +-half_hz less the noise; cells may become negative, so that sums stay true. */
+mb_status mb_cells_above_noise(const mb_cells *cells, double half_hz, double density, mb_cells *out);
+
 /* Power between two frequencies; cells cut by an end count in proportion. */
 double mb_cells_between(const mb_cells *cells, double low_hz, double high_hz);
 

@@ -28,13 +28,21 @@ static void put_powers(const mb_emission *emission, mb_emission_result *result)
     result->activity = level.activity;
 }
 
+/* Power of a sideband above the noise. What noise alone leaves by chance is no figure: a hundredth of all
+ * stays. */
+static double sideband(const mb_cells *cells, const mb_cells *signal, double low_hz, double high_hz)
+{
+    return fmax(mb_cells_between(signal, low_hz, high_hz), 0.01 * mb_cells_between(cells, low_hz, high_hz));
+}
+
 /* The sidebands leave out what the carrier line covers: the lobe of a bin and 3 Hz for its wander. */
-static double put_sidebands(const mb_emission *emission, const mb_cells *cells, mb_emission_result *result)
+static double put_sidebands(const mb_emission *emission, const mb_cells *cells, const mb_cells *signal,
+                            mb_emission_result *result)
 {
     double half_hz = emission->settings.half_width_hz,
            guard_hz = mb_spectrum_state(emission->fine).lobe_hz + 3.0;
-    double upper = mb_cells_between(cells, guard_hz, half_hz);
-    double lower = mb_cells_between(cells, -half_hz, -guard_hz);
+    double upper = sideband(cells, signal, guard_hz, half_hz);
+    double lower = sideband(cells, signal, -half_hz, -guard_hz);
 
     result->upper_dbfs = mb_power_db(upper);
     result->lower_dbfs = mb_power_db(lower);
@@ -143,10 +151,30 @@ static void put_outside(const mb_emission *emission, const mb_cells *cells, doub
     result->out_of_band_line_dbc = ratio_db(highest, sidebands);
 }
 
+/* Finds the noise beside the signal and takes it off. */
+static mb_status take_off_noise(const mb_emission *emission, const mb_cells *cells, mb_cells *signal,
+                                mb_emission_result *result)
+{
+    double half_hz = emission->settings.half_width_hz, density = 0.0;
+    double averages = fmax(1.0, 0.5 * (double)mb_spectrum_state(emission->fine).stretches);
+    mb_status status = mb_cells_noise(cells, half_hz, emission->fine_edge_hz, averages, &density);
+
+    result->noise_dbfs_per_hz = mb_power_db(density);
+    return status == MB_OK ? mb_cells_above_noise(cells, half_hz, density, signal) : status;
+}
+
 static mb_status work_out(const mb_emission *emission, const mb_cells *cells, mb_emission_result *result)
 {
+    mb_cells signal = {0};
+    mb_status status = take_off_noise(emission, cells, &signal, result);
+
+    if (status != MB_OK) {
+        return status;
+    }
     put_powers(emission, result);
-    double sidebands = put_sidebands(emission, cells, result);
+    double sidebands = put_sidebands(emission, cells, &signal, result);
+    result->occupied_99_signal_hz = mb_cells_quantile(&signal, 0.995) - mb_cells_quantile(&signal, 0.005);
+    mb_release(signal.cell);
     if (sidebands <= 0.0) {
         return mb_fail(MB_ERROR_NO_SIGNAL, "", "there is nothing within %g Hz of the carrier frequency",
                        emission->settings.half_width_hz);

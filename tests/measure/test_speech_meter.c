@@ -135,8 +135,8 @@ static void a_carrier_does_not_change_the_level(void **state)
     }
     assert_ok(mb_speech_meter_create(RATE, &meter));
     mb_speech_meter_process_cf32(meter, turned, COUNT);
-    assert_near(mb_speech_meter_state(meter).active_level_db,
-                level_of(samples, COUNT, RATE).active_level_db, 1e-4);
+    assert_near(mb_speech_meter_state(meter).active_level_db, level_of(samples, COUNT, RATE).active_level_db,
+                1e-4);
     mb_speech_meter_destroy(meter);
     mb_release(turned);
     mb_release(samples);

@@ -93,7 +93,8 @@ def score_material(noise_db, delay, flip_at, skip_s, seconds=9):
     message = signal.lfilter(band, [1.0], uniform_noise(n, 1)) * 0.5
     message[(np.arange(n) % 16000) >= 12000] = 0.0
     audio = 0.7 * message + 0.3 * np.concatenate([[0.0, 0.0, 0.0], message[:-3]])
-    audio = np.concatenate([np.zeros(delay), audio])[:n] if delay >= 0 else np.concatenate([audio[-delay:], np.zeros(-delay)])
+    late, early = np.zeros(max(delay, 0)), np.zeros(max(-delay, 0))
+    audio = np.concatenate([late, audio, early])[len(early):][:n]
     if flip_at:
         audio[int(flip_at * SCORE_RATE):] *= -1.0
     noise = signal.lfilter(band, [1.0], uniform_noise(n, 2))
@@ -140,17 +141,21 @@ def main():
     print("#ifndef TESTS_MEASURE_REFERENCE_H\n#define TESTS_MEASURE_REFERENCE_H\n")
     print("/* clang-format off */\n")
     print("/* scipy.special.ive(0, x) */")
-    print_rows("bessel_rows", "double x, value", [(x, special.ive(0, x)) for x in (0.0, 0.1, 1.0, 5.0, 15.1, 19.99, 20.01, 50.0, 700.0)])
+    arguments = (0.0, 0.1, 1.0, 5.0, 15.1, 19.99, 20.01, 50.0, 700.0)
+    print_rows("bessel_rows", "double x, value", [(x, special.ive(0, x)) for x in arguments])
     print("#ifdef MEASURE_REFERENCE_LEVELS")
     print("/* second implementation of P.56: level dB, activity, rms dB, peak */")
-    print_rows("level_rows", "const char *name; double rate_hz; int count; double level_db, activity, rms_db, peak", level_rows())
+    fields = "const char *name; double rate_hz; int count; double level_db, activity, rms_db, peak"
+    print_rows("level_rows", fields, level_rows())
     print("#endif\n")
     print("#ifdef MEASURE_REFERENCE_SCORES")
     print("/* message filter of the score material: firwin(201, [300, 2700], pass_zero=False, fs=8000) */")
     band = score_material(0, 0, 0, 0, 1)[3]
     print("static const double score_band[201] = {%s};\n" % ", ".join("%.17g" % v for v in band))
-    print("/* delay in samples, time of the polarity flip, skip, gain of the noise; then least squares over the whole matrix */")
-    print_rows("score_rows", "int delay, lag, changes, segments; double flip_at_s, skip_s, noise_gain, snr_db, median_db, worst_db", score_rows())
+    print("/* delay, lag: samples; SNRs by least squares over the whole matrix of 49 taps, of segments 17 */")
+    fields = ("int delay, lag, changes, segments; "
+              "double flip_at_s, skip_s, noise_gain, snr_db, median_db, worst_db")
+    print_rows("score_rows", fields, score_rows())
     print("#endif\n")
     print("#endif")
 

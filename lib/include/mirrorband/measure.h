@@ -131,14 +131,19 @@ typedef struct mb_emission_result {
     double carrier_suppression_active_db; /* the same with the sideband power over active speech */
     double carrier_suppression_pep_db;    /* PEP over the carrier line */
 
-    double occupied_99_hz;  /* 0.5 % of the power below, 0.5 % above (RR 1.153) */
-    double occupied_low_hz; /* its edges, relative to the missing carrier */
+    double occupied_99_hz;        /* 0.5 % of the power below, 0.5 % above (RR 1.153) */
+    double occupied_99_signal_hz; /* the same of what lies within half_width_hz, less the noise: for noisy
+                                     recordings */
+    double occupied_low_hz;       /* its edges, relative to the missing carrier */
     double occupied_high_hz;
     double bandwidth_26db_hz; /* power outside is 26 dB below the power inside, half of it on each side */
     double
         bandwidth_26db_level_hz; /* outermost points where the density in 100 Hz is 26 dB below its highest */
 
-    double upper_dbfs; /* power of the upper sideband, up to half_width_hz, without the carrier line */
+    double
+        noise_dbfs_per_hz; /* density of the noise between half_width_hz and the end of the fine spectrum */
+    double upper_dbfs;     /* power of the upper sideband above the noise, up to half_width_hz, without the
+                              carrier line */
     double lower_dbfs;
     double balance_db; /* upper over lower */
 
