@@ -1,0 +1,256 @@
+#include "mirrorband/chain.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "receive_path.h"
+
+struct mb_recording {
+    mb_receive_settings settings;
+    double baseband_rate_hz;
+    mb_decimator *front;
+    mb_smoother *smoother;
+    receive_back back;
+    mb_cf32 *baseband;
+    uint64_t taken;    /* wideband samples of the second pass */
+    uint64_t position; /* baseband samples of the second pass */
+    uint64_t skip;     /* audio samples still to be dropped: the delay of the chain */
+    uint64_t made;     /* audio samples handed out */
+    bool listening;
+};
+
+static mb_status create_parts(mb_recording *r)
+{
+    mb_recovery_settings recovery = receive_recovery_settings(&r->settings, r->baseband_rate_hz);
+    mb_status status = receive_front_create(&r->settings, r->baseband_rate_hz, &r->front);
+
+    if (status == MB_OK) {
+        status = mb_smoother_create(&recovery, &r->smoother);
+    }
+    if (status == MB_OK) {
+        size_t room = mb_decimator_output_bound(r->front, WIDEBAND_CHUNK);
+        r->baseband = mb_allocate(room, sizeof *r->baseband);
+        status = receive_back_create(&r->settings, r->baseband_rate_hz, room, &r->back);
+        if (status == MB_OK && r->baseband == NULL) {
+            status = mb_fail(MB_ERROR_MEMORY, "", "no memory for the receive chain");
+        }
+    }
+    return status;
+}
+
+mb_status mb_recording_create(const mb_receive_settings *settings, mb_recording **out)
+{
+    *out = NULL;
+    if (receive_settings_check(settings) != MB_OK) {
+        return MB_ERROR_ARGUMENT;
+    }
+    double rate_hz = receive_baseband_rate_hz(settings);
+    if (rate_hz <= 0.0) {
+        return MB_ERROR_ARGUMENT;
+    }
+    mb_recording *recording = mb_allocate(1, sizeof *recording);
+    if (recording == NULL) {
+        return mb_fail(MB_ERROR_MEMORY, "", "no memory for the receive chain");
+    }
+    recording->settings = *settings;
+    recording->baseband_rate_hz = rate_hz;
+    recording->listening = true;
+    mb_status status = create_parts(recording);
+    if (status != MB_OK) {
+        mb_recording_destroy(recording);
+        return status;
+    }
+    *out = recording;
+    return MB_OK;
+}
+
+void mb_recording_destroy(mb_recording *recording)
+{
+    if (recording != NULL) {
+        mb_decimator_destroy(recording->front);
+        mb_smoother_destroy(recording->smoother);
+        receive_back_destroy(&recording->back);
+        mb_release(recording->baseband);
+        mb_release(recording);
+    }
+}
+
+mb_status mb_recording_listen_cf32(mb_recording *r, const mb_cf32 *in, size_t n)
+{
+    mb_status status = MB_OK;
+
+    for (size_t done = 0; done < n && status == MB_OK;) {
+        size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
+        size_t count = mb_decimator_process_cf32(r->front, in + done, run, r->baseband);
+        status = mb_smoother_listen(r->smoother, r->baseband, count);
+        done += run;
+    }
+    return status;
+}
+
+mb_status mb_recording_listen_ci16(mb_recording *r, const mb_ci16 *in, size_t n)
+{
+    mb_status status = MB_OK;
+
+    for (size_t done = 0; done < n && status == MB_OK;) {
+        size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
+        size_t count = mb_decimator_process_ci16(r->front, in + done, run, r->baseband);
+        status = mb_smoother_listen(r->smoother, r->baseband, count);
+        done += run;
+    }
+    return status;
+}
+
+mb_status mb_recording_resolve(mb_recording *r)
+{
+    mb_status status = mb_smoother_resolve(r->smoother);
+
+    if (status != MB_OK) {
+        return status;
+    }
+    double delay_s = mb_decimator_delay_s(r->front) + r->back.delay_s;
+    mb_decimator_reset(r->front);
+    receive_back_reset(&r->back);
+    r->taken = r->position = r->made = 0;
+    r->skip = (uint64_t)llround(delay_s * r->settings.audio_rate_hz);
+    r->listening = false;
+    return MB_OK;
+}
+
+size_t mb_recording_output_bound(const mb_recording *r, size_t n)
+{
+    size_t chunks = n / WIDEBAND_CHUNK + 1;
+    size_t baseband = mb_decimator_output_bound(r->front, WIDEBAND_CHUNK);
+    size_t grid = (size_t)lround(r->baseband_rate_hz / AUDIO_BLOCKS_PER_S);
+    size_t audio = receive_back_output_bound(&r->back, baseband);
+
+    return chunks * ((audio > baseband ? audio : baseband) + baseband / grid + 2);
+}
+
+static void report_at(mb_recording *r)
+{
+    size_t step = (size_t)lround(mb_smoother_step_s(r->smoother) * r->baseband_rate_hz);
+    size_t index = (size_t)(r->position / step), last = mb_smoother_point_count(r->smoother) - 1;
+    mb_track_point point = mb_smoother_point(r->smoother, index < last ? index : last);
+
+    receive_back_report(&r->back, point.mode, point.lock_quality);
+}
+
+/* Derotated baseband to audio, cut where the track has its points. */
+static size_t detect(mb_recording *r, size_t n, float *audio)
+{
+    size_t step = (size_t)lround(mb_smoother_step_s(r->smoother) * r->baseband_rate_hz), made = 0;
+
+    for (size_t done = 0; done < n;) {
+        size_t left = step - (size_t)(r->position % step);
+        size_t run = left < n - done ? left : n - done;
+        if (left == step) {
+            report_at(r);
+        }
+        made += receive_back_process(&r->back, r->baseband + done, run, audio + made);
+        r->position += run;
+        done += run;
+    }
+    size_t drop = r->skip < made ? (size_t)r->skip : made;
+    r->skip -= drop;
+    memmove(audio, audio + drop, (made - drop) * sizeof *audio);
+    return made - drop;
+}
+
+size_t mb_recording_process_cf32(mb_recording *r, const mb_cf32 *in, size_t n, float *audio)
+{
+    size_t made = 0;
+
+    for (size_t done = 0; done < n;) {
+        size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
+        size_t count = mb_decimator_process_cf32(r->front, in + done, run, r->baseband);
+        mb_smoother_rotate(r->smoother, r->baseband, count, r->baseband);
+        made += detect(r, count, audio + made);
+        done += run;
+    }
+    r->taken += n;
+    r->made += made;
+    return made;
+}
+
+size_t mb_recording_process_ci16(mb_recording *r, const mb_ci16 *in, size_t n, float *audio)
+{
+    size_t made = 0;
+
+    for (size_t done = 0; done < n;) {
+        size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
+        size_t count = mb_decimator_process_ci16(r->front, in + done, run, r->baseband);
+        mb_smoother_rotate(r->smoother, r->baseband, count, r->baseband);
+        made += detect(r, count, audio + made);
+        done += run;
+    }
+    r->taken += n;
+    r->made += made;
+    return made;
+}
+
+size_t mb_recording_drain(mb_recording *r, float *audio)
+{
+    /* the silence behind the end goes in as baseband: its delay is the detector's, whatever came in front */
+    uint64_t wanted = (uint64_t)llround((double)r->taken * r->settings.audio_rate_hz / r->settings.rate_hz);
+    size_t room = mb_decimator_output_bound(r->front, WIDEBAND_CHUNK), made = 0;
+    size_t block = (size_t)lround(r->baseband_rate_hz / AUDIO_BLOCKS_PER_S);
+
+    while (made == 0 && r->made < wanted) {
+        size_t run = block < room ? block : room;
+        memset(r->baseband, 0, run * sizeof *r->baseband);
+        made = detect(r, run, audio);
+        if (made > wanted - r->made) {
+            made = (size_t)(wanted - r->made);
+        }
+        r->made += made;
+    }
+    return made;
+}
+
+size_t mb_recording_derotate_cf32(mb_recording *r, const mb_cf32 *in, size_t n, mb_cf32 *out)
+{
+    size_t made = 0;
+
+    for (size_t done = 0; done < n;) {
+        size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
+        size_t count = mb_decimator_process_cf32(r->front, in + done, run, out + made);
+        mb_smoother_rotate(r->smoother, out + made, count, out + made);
+        made += count;
+        done += run;
+    }
+    r->taken += n;
+    return made;
+}
+
+double mb_recording_baseband_rate_hz(const mb_recording *r)
+{
+    return r->baseband_rate_hz;
+}
+
+double mb_recording_baseband_delay_s(const mb_recording *r)
+{
+    return mb_decimator_delay_s(r->front);
+}
+
+size_t mb_recording_point_count(const mb_recording *r)
+{
+    return mb_smoother_point_count(r->smoother);
+}
+
+mb_track_point mb_recording_point(const mb_recording *r, size_t index)
+{
+    mb_track_point point = mb_smoother_point(r->smoother, index);
+
+    point.time_s -= mb_decimator_delay_s(r->front);
+    point.carrier_offset_hz += r->settings.offset_hz;
+    return point;
+}
+
+mb_receive_state mb_recording_state(const mb_recording *r)
+{
+    mb_receive_state state = {.carrier = mb_smoother_state(r->smoother), .squelch_open = true};
+
+    state.carrier.carrier_offset_hz += r->settings.offset_hz;
+    return state;
+}
