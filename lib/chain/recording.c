@@ -16,7 +16,7 @@ struct mb_recording {
     uint64_t position; /* baseband samples of the second pass */
     uint64_t skip;     /* audio samples still to be dropped: the delay of the chain */
     uint64_t made;     /* audio samples handed out */
-    bool listening;
+    bool sixteen_bit;  /* kind of sample of the second pass */
 };
 
 static mb_status create_parts(mb_recording *r)
@@ -54,7 +54,6 @@ mb_status mb_recording_create(const mb_receive_settings *settings, mb_recording 
     }
     recording->settings = *settings;
     recording->baseband_rate_hz = rate_hz;
-    recording->listening = true;
     mb_status status = create_parts(recording);
     if (status != MB_OK) {
         mb_recording_destroy(recording);
@@ -113,7 +112,6 @@ mb_status mb_recording_resolve(mb_recording *r)
     receive_back_reset(&r->back);
     r->taken = r->position = r->made = 0;
     r->skip = (uint64_t)llround(delay_s * r->settings.audio_rate_hz);
-    r->listening = false;
     return MB_OK;
 }
 
@@ -157,15 +155,24 @@ static size_t detect(mb_recording *r, size_t n, float *audio)
     return made - drop;
 }
 
+/* One chunk of wideband in the kind of sample of the recording. */
+static size_t process_chunk(mb_recording *r, const void *in, size_t n, float *audio)
+{
+    size_t count = r->sixteen_bit ? mb_decimator_process_ci16(r->front, in, n, r->baseband)
+                                  : mb_decimator_process_cf32(r->front, in, n, r->baseband);
+
+    mb_smoother_rotate(r->smoother, r->baseband, count, r->baseband);
+    return detect(r, count, audio);
+}
+
 size_t mb_recording_process_cf32(mb_recording *r, const mb_cf32 *in, size_t n, float *audio)
 {
     size_t made = 0;
 
+    r->sixteen_bit = false;
     for (size_t done = 0; done < n;) {
         size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
-        size_t count = mb_decimator_process_cf32(r->front, in + done, run, r->baseband);
-        mb_smoother_rotate(r->smoother, r->baseband, count, r->baseband);
-        made += detect(r, count, audio + made);
+        made += process_chunk(r, in + done, run, audio + made);
         done += run;
     }
     r->taken += n;
@@ -177,11 +184,10 @@ size_t mb_recording_process_ci16(mb_recording *r, const mb_ci16 *in, size_t n, f
 {
     size_t made = 0;
 
+    r->sixteen_bit = true;
     for (size_t done = 0; done < n;) {
         size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
-        size_t count = mb_decimator_process_ci16(r->front, in + done, run, r->baseband);
-        mb_smoother_rotate(r->smoother, r->baseband, count, r->baseband);
-        made += detect(r, count, audio + made);
+        made += process_chunk(r, in + done, run, audio + made);
         done += run;
     }
     r->taken += n;
@@ -191,15 +197,12 @@ size_t mb_recording_process_ci16(mb_recording *r, const mb_ci16 *in, size_t n, f
 
 size_t mb_recording_drain(mb_recording *r, float *audio)
 {
-    /* the silence behind the end goes in as baseband: its delay is the detector's, whatever came in front */
+    static const mb_cf32 silence[WIDEBAND_CHUNK]; /* zeros are zeros in either kind of sample */
     uint64_t wanted = (uint64_t)llround((double)r->taken * r->settings.audio_rate_hz / r->settings.rate_hz);
-    size_t room = mb_decimator_output_bound(r->front, WIDEBAND_CHUNK), made = 0;
-    size_t block = (size_t)lround(r->baseband_rate_hz / AUDIO_BLOCKS_PER_S);
+    size_t made = 0;
 
     while (made == 0 && r->made < wanted) {
-        size_t run = block < room ? block : room;
-        memset(r->baseband, 0, run * sizeof *r->baseband);
-        made = detect(r, run, audio);
+        made = process_chunk(r, silence, WIDEBAND_CHUNK, audio);
         if (made > wanted - r->made) {
             made = (size_t)(wanted - r->made);
         }

@@ -100,7 +100,6 @@ typedef struct mb_receive_state {
     mb_carrier_state carrier; /* carrier_offset_hz counts from the centre of the input */
     double gain_db;           /* of the gain control; 0 while off */
     bool squelch_open;        /* true while the squelch is off */
-    uint64_t non_finite;      /* input samples that were NaN or infinite, taken as zero */
 } mb_receive_state;
 
 /** Live reception: bounded delay, sample by sample. */
