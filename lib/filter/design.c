@@ -2,6 +2,8 @@
 
 #include <math.h>
 
+#include "design.h"
+
 double mb_kaiser_beta(double attenuation_db)
 {
     if (attenuation_db > 50.0) {
@@ -21,8 +23,7 @@ size_t mb_kaiser_length(double attenuation_db, double transition_hz, double rate
     return (size_t)count | 1u;
 }
 
-/* Modified Bessel function of the first kind and order 0, by its series. */
-static double bessel_i0(double x)
+double mb_bessel_i0(double x)
 {
     double term = 1.0, sum = 1.0;
 
@@ -35,11 +36,11 @@ static double bessel_i0(double x)
 
 void mb_kaiser_window(size_t count, double beta, double *window)
 {
-    double middle = 0.5 * ((double)count - 1.0), scale = 1.0 / bessel_i0(beta);
+    double middle = 0.5 * ((double)count - 1.0), scale = 1.0 / mb_bessel_i0(beta);
 
     for (size_t i = 0; i < count; i++) {
         double x = middle > 0.0 ? ((double)i - middle) / middle : 0.0;
-        window[i] = bessel_i0(beta * sqrt(fmax(0.0, 1.0 - x * x))) * scale;
+        window[i] = mb_bessel_i0(beta * sqrt(fmax(0.0, 1.0 - x * x))) * scale;
     }
 }
 

@@ -3,12 +3,16 @@
 #include <math.h>
 #include <string.h>
 
-enum { LANES = 8, CHUNK = 256 };
+#include "kernels/kernels.h"
+
+enum { CHUNK = 256 };
 
 struct mb_fir {
-    float *taps; /* reversed, padded with zeros to a multiple of LANES */
+    const mb_kernels *kernels;
+    float *taps; /* reversed, zeros before them up to a multiple of MB_LANES */
     size_t tap_count;
     size_t padded;
+    uint64_t non_finite;
     float *re, *im; /* the last padded - 1 samples and a chunk behind them */
 };
 
@@ -23,8 +27,9 @@ mb_status mb_fir_create(const mb_fir_settings *settings, mb_fir **out)
     if (fir == NULL) {
         return mb_fail(MB_ERROR_MEMORY, "", "no memory for a filter");
     }
+    fir->kernels = mb_kernels_best();
     fir->tap_count = settings->tap_count;
-    fir->padded = (fir->tap_count + LANES - 1) / LANES * LANES;
+    fir->padded = (fir->tap_count + MB_LANES - 1) / MB_LANES * MB_LANES;
     fir->taps = mb_allocate(fir->padded, sizeof *fir->taps);
     fir->re = mb_allocate(fir->padded + CHUNK, sizeof *fir->re);
     fir->im = mb_allocate(fir->padded + CHUNK, sizeof *fir->im);
@@ -60,17 +65,9 @@ size_t mb_fir_delay_samples(const mb_fir *fir)
     return (fir->tap_count - 1) / 2;
 }
 
-/* Sum of products in LANES partial sums, so that vector code gives the same bits. */
-static float dot(const float *a, const float *b, size_t n)
+mb_filter_counts mb_fir_state(const mb_fir *fir)
 {
-    float sum[LANES] = {0.0f};
-
-    for (size_t i = 0; i < n; i += LANES) {
-        for (size_t lane = 0; lane < LANES; lane++) {
-            sum[lane] += a[i + lane] * b[i + lane];
-        }
-    }
-    return ((sum[0] + sum[4]) + (sum[1] + sum[5])) + ((sum[2] + sum[6]) + (sum[3] + sum[7]));
+    return (mb_filter_counts){fir->non_finite};
 }
 
 void mb_fir_process_f32(mb_fir *fir, const float *in, size_t n, float *out)
@@ -80,10 +77,12 @@ void mb_fir_process_f32(mb_fir *fir, const float *in, size_t n, float *out)
     for (size_t done = 0; done < n;) {
         size_t run = n - done < CHUNK ? n - done : CHUNK;
         for (size_t i = 0; i < run; i++) {
-            fir->re[past + i] = isfinite(in[done + i]) ? in[done + i] : 0.0f;
+            bool finite = isfinite(in[done + i]);
+            fir->re[past + i] = finite ? in[done + i] : 0.0f;
+            fir->non_finite += finite ? 0 : 1;
         }
         for (size_t i = 0; i < run; i++) {
-            out[done + i] = dot(fir->taps, fir->re + i, fir->padded);
+            out[done + i] = fir->kernels->dot(fir->taps, fir->re + i, fir->padded);
         }
         memmove(fir->re, fir->re + run, past * sizeof *fir->re);
         done += run;
@@ -100,10 +99,11 @@ void mb_fir_process_cf32(mb_fir *fir, const mb_cf32 *in, size_t n, mb_cf32 *out)
             bool finite = isfinite(in[done + i].re) && isfinite(in[done + i].im);
             fir->re[past + i] = finite ? in[done + i].re : 0.0f;
             fir->im[past + i] = finite ? in[done + i].im : 0.0f;
+            fir->non_finite += finite ? 0 : 1;
         }
         for (size_t i = 0; i < run; i++) {
-            out[done + i].re = dot(fir->taps, fir->re + i, fir->padded);
-            out[done + i].im = dot(fir->taps, fir->im + i, fir->padded);
+            out[done + i].re = fir->kernels->dot(fir->taps, fir->re + i, fir->padded);
+            out[done + i].im = fir->kernels->dot(fir->taps, fir->im + i, fir->padded);
         }
         memmove(fir->re, fir->re + run, past * sizeof *fir->re);
         memmove(fir->im, fir->im + run, past * sizeof *fir->im);

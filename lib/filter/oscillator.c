@@ -2,6 +2,8 @@
 
 #include <math.h>
 
+#include "kernels/kernels.h"
+
 void mb_oscillator_set(mb_oscillator *oscillator, double frequency_hz, double rate_hz)
 {
     double turns = frequency_hz / rate_hz;
@@ -13,13 +15,6 @@ void mb_oscillator_set(mb_oscillator *oscillator, double frequency_hz, double ra
 
 void mb_oscillator_rotate(mb_oscillator *oscillator, const mb_cf32 *in, size_t n, mb_cf32 *out)
 {
-    uint64_t phase = oscillator->phase;
-
-    for (size_t i = 0; i < n; i++) {
-        float angle = (float)((double)(int64_t)phase * (2.0 * MB_PI * 0x1.0p-64));
-        float cs = cosf(angle), sn = sinf(angle), re = in[i].re, im = in[i].im;
-        out[i] = (mb_cf32){re * cs - im * sn, re * sn + im * cs};
-        phase += oscillator->step;
-    }
-    oscillator->phase = phase;
+    mb_kernels_best()->rotate(oscillator->phase, oscillator->step, in, n, out);
+    oscillator->phase += oscillator->step * n;
 }

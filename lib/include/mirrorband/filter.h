@@ -11,6 +11,11 @@
 extern "C" {
 #endif
 
+/** What a filter counted since it was made. */
+typedef struct mb_filter_counts {
+    uint64_t non_finite; /* input samples that were infinite or no number, taken as zero */
+} mb_filter_counts;
+
 /* ---- Fourier transform -----------------------------------------------------------------------------------
  */
 
@@ -69,6 +74,9 @@ MB_API void mb_fir_process_f32(mb_fir *fir, const float *in, size_t n, float *ou
 MB_API void mb_fir_process_cf32(mb_fir *fir, const mb_cf32 *in, size_t n, mb_cf32 *out);
 /** Delay of symmetric taps: (tap_count - 1) / 2. Thread: any. */
 MB_API size_t mb_fir_delay_samples(const mb_fir *fir);
+/** Thread: stream. */
+MB_API mb_filter_counts mb_fir_state(const mb_fir *fir);
+/** Back to how it was made, counts excepted. Thread: stream. */
 MB_API void mb_fir_reset(mb_fir *fir);
 /** Accepts NULL. Thread: control. */
 MB_API void mb_fir_destroy(mb_fir *fir);
@@ -99,6 +107,14 @@ typedef struct mb_resampler_settings {
     double attenuation_db; /* of images and aliases, 40 to 120 dB */
 } mb_resampler_settings;
 
+/**
+ * Windowed ideal low-pass, evaluated at places kept in integers, so that days of streaming do not drift.
+ * Output 0 is at the time of input 0, seen through a delay of mb_resampler_delay_s; the first input makes it.
+ * Between passband_hz and the lower rate less passband_hz the gain falls: what folds there stays out of the
+ * passband. Where the ratio of the rates is simple each place has taps of its own, else they are interpolated
+ * linearly between so many places that the error stays below attenuation_db. Method: R. E. Crochiere and L.
+ * R. Rabiner, Multirate Digital Signal Processing, 1983, section 2.4; Kaiser's window.
+ */
 typedef struct mb_resampler mb_resampler;
 
 MB_API mb_resampler_settings mb_resampler_settings_default(void);
@@ -111,6 +127,9 @@ MB_API size_t mb_resampler_process_cf32(mb_resampler *resampler, const mb_cf32 *
 MB_API size_t mb_resampler_output_bound(const mb_resampler *resampler, size_t n);
 /** Time by which the output lags, s. Thread: any. */
 MB_API double mb_resampler_delay_s(const mb_resampler *resampler);
+/** Thread: stream. */
+MB_API mb_filter_counts mb_resampler_state(const mb_resampler *resampler);
+/** Back to how it was made, counts excepted. Thread: stream. */
 MB_API void mb_resampler_reset(mb_resampler *resampler);
 /** Accepts NULL. Thread: control. */
 MB_API void mb_resampler_destroy(mb_resampler *resampler);
@@ -138,6 +157,9 @@ MB_API size_t mb_decimator_process_cf32(mb_decimator *decimator, const mb_cf32 *
 MB_API size_t mb_decimator_process_ci16(mb_decimator *decimator, const mb_ci16 *in, size_t n, mb_cf32 *out);
 MB_API size_t mb_decimator_output_bound(const mb_decimator *decimator, size_t n);
 MB_API double mb_decimator_delay_s(const mb_decimator *decimator);
+/** Thread: stream. */
+MB_API mb_filter_counts mb_decimator_state(const mb_decimator *decimator);
+/** Back to how it was made, counts excepted. Thread: stream. */
 MB_API void mb_decimator_reset(mb_decimator *decimator);
 /** Accepts NULL. Thread: control. */
 MB_API void mb_decimator_destroy(mb_decimator *decimator);
@@ -163,6 +185,9 @@ MB_API size_t mb_interpolator_process(mb_interpolator *interpolator, const mb_cf
                                       mb_cf32 *out);
 MB_API size_t mb_interpolator_output_bound(const mb_interpolator *interpolator, size_t n);
 MB_API double mb_interpolator_delay_s(const mb_interpolator *interpolator);
+/** Thread: stream. */
+MB_API mb_filter_counts mb_interpolator_state(const mb_interpolator *interpolator);
+/** Back to how it was made, counts excepted. Thread: stream. */
 MB_API void mb_interpolator_reset(mb_interpolator *interpolator);
 /** Accepts NULL. Thread: control. */
 MB_API void mb_interpolator_destroy(mb_interpolator *interpolator);
