@@ -74,12 +74,36 @@ static void moments_are_gaussian_and_neighbours_independent(void **state)
     assert_near(product / DRAWS, 0.0, deviation);
 }
 
+/* Between the two outermost edges the density halves and the layers are wide: there a wrong choice under the
+ * curve shows. Shares of the two halves by erfc of the C library; four standard deviations of a count. */
+static void numbers_at_the_edge_of_a_layer_follow_the_curve(void **state)
+{
+    channel_gauss gauss;
+    mb_random random;
+    double inner = 0.0, outer = 0.0;
+
+    (void)state;
+    channel_gauss_prepare(&gauss);
+    mb_random_seed(&random, SEED + 2, 0);
+    double low = gauss.edge[2], high = gauss.edge[1], middle = (low + high) / 2.0;
+    for (int i = 0; i < DRAWS; i++) {
+        double x = fabs(channel_gauss_draw(&gauss, &random));
+        inner += x >= low && x < middle;
+        outer += x >= middle && x < high;
+    }
+    double expected_inner = DRAWS * (erfc(low / sqrt(2.0)) - erfc(middle / sqrt(2.0)));
+    double expected_outer = DRAWS * (erfc(middle / sqrt(2.0)) - erfc(high / sqrt(2.0)));
+    assert_near(inner, expected_inner, 4.0 * sqrt(expected_inner));
+    assert_near(outer, expected_outer, 4.0 * sqrt(expected_outer));
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(layers_close_at_the_top_of_the_curve),
         cmocka_unit_test(numbers_fall_into_bins_as_a_gaussian_does),
         cmocka_unit_test(moments_are_gaussian_and_neighbours_independent),
+        cmocka_unit_test(numbers_at_the_edge_of_a_layer_follow_the_curve),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

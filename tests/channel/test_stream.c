@@ -1,6 +1,8 @@
 /* What holds for every channel: block cuts, seeds, independent impairments, linearity, reset, bad samples. */
 #include "samples.h"
 
+#include "parts.h"
+
 enum { SEED = 9, COUNT = 20000 };
 
 /* Every impairment at once. */
@@ -228,6 +230,36 @@ static void phase_noise_and_paths_do_not_share_random_numbers(void **state)
     free(samples);
 }
 
+/* b is reached from a by drawing on. */
+static bool follows(mb_random a, const mb_random *b)
+{
+    for (int i = 0; i < 3000; i++) {
+        if (memcmp(a.word, b->word, sizeof a.word) == 0) {
+            return true;
+        }
+        (void)mb_random_bits(&a);
+    }
+    return false;
+}
+
+static void each_impairment_draws_from_its_own_stream(void **state)
+{
+    mb_channel_settings settings = everything();
+    mb_channel *channel = channel_of(&settings);
+    const mb_random *streams[] = {&channel->noise.random, &channel->impulses.random,
+                                  &channel->oscillator.random, &channel->fading.tap[0].random,
+                                  &channel->fading.tap[1].random};
+    const size_t count = sizeof streams / sizeof streams[0];
+
+    (void)state;
+    for (size_t i = 0; i < count; i++) {
+        for (size_t k = 0; k < count; k++) {
+            assert_true((i == k) == follows(*streams[i], streams[k]));
+        }
+    }
+    mb_channel_destroy(channel);
+}
+
 /* With nothing added and nothing limited a channel is linear over the real numbers. */
 static void fading_oscillator_and_rails_are_linear(void **state)
 {
@@ -338,6 +370,7 @@ int main(void)
         cmocka_unit_test(the_default_channel_changes_nothing),
         cmocka_unit_test(reset_begins_the_same_realisation_again),
         cmocka_unit_test(bad_samples_count_as_zero_and_do_not_last),
+        cmocka_unit_test(each_impairment_draws_from_its_own_stream),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

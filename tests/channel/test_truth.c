@@ -268,6 +268,79 @@ static void the_truth_comes_at_the_samples_asked_for(void **state)
     free(samples);
 }
 
+/* Output and truth against the closed form, in the order of the settings: phase + 2 pi (offset t + drift
+ * t^2/2). 12 s at 8 kHz; float samples. */
+static void the_oscillator_does_what_the_settings_say(void **state)
+{
+    mb_channel_settings settings = mb_channel_settings_default();
+    mb_cf32 *samples = samples_of(COUNT);
+
+    (void)state;
+    settings.rate_hz = 8e3;
+    settings.offset_hz = -331.25;
+    settings.drift_hz_per_s = 7.5;
+    settings.phase_rad = 0.4;
+    mb_channel *channel = channel_of(&settings);
+    fill_tone(samples, COUNT, 0.0, 1.0);
+    mb_channel_process(channel, samples, COUNT, samples);
+    for (size_t n = 0; n < COUNT; n += 999) {
+        double t = (double)n / 8e3, phase = 0.4 + 2.0 * MB_PI * (-331.25 * t + 3.75 * t * t);
+        assert_near(samples[n].re, cos(phase), 2e-7);
+        assert_near(samples[n].im, sin(phase), 2e-7);
+    }
+    double t = (COUNT - 1) / 8e3;
+    mb_truth truth = mb_channel_truth(channel);
+    assert_near(truth.carrier_phase_rad, 0.4 + 2.0 * MB_PI * (-331.25 * t + 3.75 * t * t), 1e-8);
+    assert_near(truth.carrier_offset_hz, -331.25 + 7.5 * t, 1e-9);
+    mb_channel_destroy(channel);
+    free(samples);
+}
+
+/* What the paths do to the carrier itself, seen by its leak. */
+static void path_gains_are_those_at_the_carrier(void **state)
+{
+    mb_channel_settings settings = mb_channel_settings_default();
+    mb_cf32 *samples = samples_of(COUNT);
+
+    (void)state;
+    settings.rate_hz = 8e3;
+    settings.carrier_hz = 1130.0;
+    settings.leak_dbc = 0.0;
+    settings.paths = 2;
+    settings.delay_s = 2e-3;
+    mb_channel *channel = channel_of(&settings);
+    mb_channel_process(channel, samples, COUNT, samples);
+    mb_truth truth = mb_channel_truth(channel);
+    double angle = 2.0 * MB_PI * fmod(1130.0 * (COUNT - 1) / 8e3, 1.0);
+    double re = truth.path_re[0] + truth.path_re[1], im = truth.path_im[0] + truth.path_im[1];
+    assert_near(samples[COUNT - 1].re, re * cos(angle) - im * sin(angle), 1e-6);
+    assert_near(samples[COUNT - 1].im, re * sin(angle) + im * cos(angle), 1e-6);
+    mb_channel_destroy(channel);
+    free(samples);
+}
+
+/* Power in over power out of a flat message; 241 tones are flat to 0.02 dB. */
+static void the_power_gain_of_the_truth_is_that_of_a_flat_message(void **state)
+{
+    mb_channel_settings settings = mb_channel_settings_default();
+    mb_cf32 *message = samples_of(COUNT), *heard = samples_of(COUNT);
+
+    (void)state;
+    fill_flat_message(message, COUNT);
+    settings.rate_hz = 8e3;
+    settings.paths = 2;
+    for (int delay = 0; delay < 5; delay++) {
+        settings.delay_s = delay / 8e3;
+        mb_channel *channel = channel_of(&settings);
+        mb_channel_process(channel, message, COUNT, heard);
+        double gain_db = mb_power_db(power_of(heard, COUNT) / power_of(message, COUNT));
+        assert_near(mb_channel_truth(channel).fading_db, gain_db, 0.03);
+        mb_channel_destroy(channel);
+    }
+    free(message);
+    free(heard);
+}
+
 /* A message on a carrier away from the centre: the truth includes carrier_hz, also with a delayed path. */
 static void a_carrier_off_the_centre_is_part_of_the_truth(void **state)
 {
@@ -315,6 +388,9 @@ int main(void)
         cmocka_unit_test(the_phase_is_unwrapped),
         cmocka_unit_test(the_truth_comes_at_the_samples_asked_for),
         cmocka_unit_test(a_carrier_off_the_centre_is_part_of_the_truth),
+        cmocka_unit_test(the_oscillator_does_what_the_settings_say),
+        cmocka_unit_test(path_gains_are_those_at_the_carrier),
+        cmocka_unit_test(the_power_gain_of_the_truth_is_that_of_a_flat_message),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
