@@ -109,13 +109,14 @@ mb_status mb_plot_panel(mb_plot *plot, const mb_plot_panel_settings *settings)
     return MB_OK;
 }
 
-static mb_status last_panel(const mb_plot *plot, plot_panel **panel)
+/* The panel that series and marks go to; NULL, with a fault, when there is none. */
+static plot_panel *last_panel(const mb_plot *plot)
 {
     if (plot->panel_count == 0) {
-        return mb_fail(MB_ERROR_ARGUMENT, "plot", "a picture needs a panel first; call mb_plot_panel");
+        (void)mb_fail(MB_ERROR_ARGUMENT, "plot", "a picture needs a panel first; call mb_plot_panel");
+        return NULL;
     }
-    *panel = plot->panels[plot->panel_count - 1];
-    return MB_OK;
+    return plot->panels[plot->panel_count - 1];
 }
 
 static mb_status check_series(const plot_panel *panel, const mb_plot_series *series)
@@ -144,13 +145,10 @@ static double choose(double wanted, double otherwise)
 
 mb_status mb_plot_add(mb_plot *plot, const mb_plot_series *series)
 {
-    plot_panel *panel = NULL;
-    mb_status status = last_panel(plot, &panel);
+    plot_panel *panel = last_panel(plot);
 
-    if (status == MB_OK) {
-        status = check_series(panel, series);
-    }
-    if (status != MB_OK) {
+    mb_status status = panel != NULL ? check_series(panel, series) : MB_ERROR_ARGUMENT;
+    if (panel == NULL || status != MB_OK) {
         return status;
     }
     bool points = series->style == MB_PLOT_POINTS;
@@ -178,11 +176,10 @@ mb_status mb_plot_add(mb_plot *plot, const mb_plot_series *series)
 
 static mb_status add_mark(mb_plot *plot, double value, const char *label, bool vertical)
 {
-    plot_panel *panel = NULL;
-    mb_status status = last_panel(plot, &panel);
+    plot_panel *panel = last_panel(plot);
 
-    if (status != MB_OK) {
-        return status;
+    if (panel == NULL) {
+        return MB_ERROR_ARGUMENT;
     }
     if (!isfinite(value) || panel->mark_count == MB_PLOT_MARKS_MAX) {
         return mb_fail(MB_ERROR_ARGUMENT, vertical ? "x" : "y",
@@ -207,13 +204,13 @@ mb_status mb_plot_mark_x(mb_plot *plot, double x, const char *label)
 
 mb_status mb_plot_note(mb_plot *plot, const char *text)
 {
-    plot_panel *panel = NULL;
-    mb_status status = last_panel(plot, &panel);
+    plot_panel *panel = last_panel(plot);
 
-    if (status == MB_OK) {
-        copy_text(panel->note, sizeof panel->note, text);
+    if (panel == NULL) {
+        return MB_ERROR_ARGUMENT;
     }
-    return status;
+    copy_text(panel->note, sizeof panel->note, text);
+    return MB_OK;
 }
 
 void mb_plot_destroy(mb_plot *plot)

@@ -1,5 +1,4 @@
-#include "plot_layout.h"
-#include "sink.h"
+#include "plot_parts.h"
 
 #include "path.h"
 
@@ -53,7 +52,7 @@ static mb_status put_fitted(mb_sink *sink, const char *kind, double size_px, dou
     return put_text(sink, kind, x, y, fitted);
 }
 
-static mb_status put_line(mb_sink *sink, const char *kind, double x1, double y1, double x2, double y2)
+mb_status mb_plot_put_line(mb_sink *sink, const char *kind, double x1, double y1, double x2, double y2)
 {
     return mb_sink_print(sink, "<path class=\"%s\" d=\"M%.1f %.1fL%.1f %.1f\"/>\n", kind, x1, y1, x2, y2);
 }
@@ -78,7 +77,8 @@ static mb_status put_x_ticks(mb_sink *sink, const plot_box *box, double right_en
         mb_plot_scale_label(&box->x_scale, values[i], label);
         double half = 0.5 * mb_plot_text_width(label, 12.0);
         bool zero = fabs(values[i]) < 1e-9 * box->x_scale.step;
-        status = put_line(sink, zero ? "zero" : "grid", crisp(at), box->y, crisp(at), box->y + box->height);
+        status = mb_plot_put_line(sink, zero ? "zero" : "grid", crisp(at), box->y, crisp(at),
+                                  box->y + box->height);
         if (status == MB_OK) {
             status = put_text(sink, "mid", fmin(at, right_end - half), box->y + box->height + 18.0, label);
         }
@@ -97,7 +97,8 @@ static mb_status put_y_ticks(mb_sink *sink, const plot_box *box)
         char label[48];
         mb_plot_scale_label(&box->y_scale, values[i], label);
         bool zero = fabs(values[i]) < 1e-9 * box->y_scale.step;
-        status = put_line(sink, zero ? "zero" : "grid", box->x, crisp(at), box->x + box->width, crisp(at));
+        status =
+            mb_plot_put_line(sink, zero ? "zero" : "grid", box->x, crisp(at), box->x + box->width, crisp(at));
         if (status == MB_OK) {
             status = put_text(sink, "end", box->x - 8.0, at + 4.2, label);
         }
@@ -149,7 +150,7 @@ static mb_status put_swatch(mb_sink *sink, const plot_entry *entry)
     const plot_series *series = entry->series;
 
     if (series == NULL) {
-        return put_line(sink, "mark", entry->x, entry->y, entry->x + MB_PLOT_SWATCH_PX, entry->y);
+        return mb_plot_put_line(sink, "mark", entry->x, entry->y, entry->x + MB_PLOT_SWATCH_PX, entry->y);
     }
     if (series->style == MB_PLOT_POINTS) {
         return mb_sink_print(sink, "<path class=\"line c%d\" stroke-width=\"7\" d=\"M%.1f %.1fh.01\"/>\n",
@@ -179,85 +180,6 @@ static mb_status put_header(mb_sink *sink, const plot_panel *panel, const plot_b
         }
     }
     return status;
-}
-
-/* ---- data ---------------------------------------------------------------------------------------------- */
-
-static mb_status put_points(mb_sink *sink, const plot_series *series, const plot_box *box)
-{
-    mb_status status = MB_OK;
-
-    for (size_t i = 0; i < series->count && status == MB_OK; i++) {
-        if (isfinite(series->x[i]) && isfinite(series->y[i])) {
-            status = mb_sink_print(sink, "M%.1f %.1fh.01",
-                                   mb_plot_position(&box->x_scale, series->x[i], box->width),
-                                   box->height - mb_plot_position(&box->y_scale, series->y[i], box->height));
-        }
-    }
-    return status;
-}
-
-static mb_status put_polyline(mb_sink *sink, const plot_series *series, const plot_box *box)
-{
-    bool *keep = mb_allocate(series->count, sizeof *keep);
-    bool drawing = false;
-    mb_status status = MB_OK;
-
-    if (keep == NULL) {
-        return mb_fail_memory("a picture");
-    }
-    mb_plot_thin(series, &box->x_scale, box->width, keep);
-    for (size_t i = 0; i < series->count && status == MB_OK; i++) {
-        if (!isfinite(series->x[i]) || !isfinite(series->y[i])) {
-            drawing = false;
-        } else if (keep[i]) {
-            status = mb_sink_print(sink, "%s%.2f %.2f", drawing ? "L" : "M",
-                                   mb_plot_position(&box->x_scale, series->x[i], box->width),
-                                   box->height - mb_plot_position(&box->y_scale, series->y[i], box->height));
-            drawing = true;
-        }
-    }
-    mb_release(keep);
-    return status;
-}
-
-static mb_status put_series(mb_sink *sink, const plot_series *series, const plot_box *box)
-{
-    mb_status status = mb_sink_print(
-        sink, "<path class=\"line%s c%d\" stroke-width=\"%.2f\" stroke-opacity=\"%.2f\" d=\"",
-        series->style == MB_PLOT_DASHED ? " dash" : "", series->colour, series->width_px, series->opacity);
-
-    if (status == MB_OK) {
-        status =
-            series->style == MB_PLOT_POINTS ? put_points(sink, series, box) : put_polyline(sink, series, box);
-    }
-    return status == MB_OK ? mb_sink_print(sink, "\"/>\n") : status;
-}
-
-static mb_status put_mark(mb_sink *sink, const plot_mark *mark, const plot_box *box)
-{
-    if (mark->vertical) {
-        double x = mb_plot_position(&box->x_scale, mark->value, box->width);
-        return put_line(sink, "mark", x, 0.0, x, box->height);
-    }
-    double y = box->height - mb_plot_position(&box->y_scale, mark->value, box->height);
-    return put_line(sink, "mark", 0.0, y, box->width, y);
-}
-
-/* An inner svg element clips what lies outside the plot area. */
-static mb_status put_data(mb_sink *sink, const plot_panel *panel, const plot_box *box)
-{
-    mb_status status = mb_sink_print(
-        sink, "<svg x=\"%.1f\" y=\"%.1f\" width=\"%.1f\" height=\"%.1f\" overflow=\"hidden\">\n", box->x,
-        box->y, box->width, box->height);
-
-    for (size_t i = 0; i < panel->mark_count && status == MB_OK; i++) {
-        status = put_mark(sink, &panel->marks[i], box);
-    }
-    for (size_t i = 0; i < panel->series_count && status == MB_OK; i++) {
-        status = put_series(sink, &panel->series[i], box);
-    }
-    return status == MB_OK ? mb_sink_print(sink, "</svg>\n") : status;
 }
 
 /* ---- figure -------------------------------------------------------------------------------------------- */
@@ -300,7 +222,7 @@ static mb_status put_figure(mb_sink *sink, const mb_plot *plot, const plot_layou
             status = put_frame(sink, &layout->boxes[i]);
         }
         if (status == MB_OK) {
-            status = put_data(sink, plot->panels[i], &layout->boxes[i]);
+            status = mb_plot_put_data(sink, plot->panels[i], &layout->boxes[i]);
         }
     }
     return status == MB_OK ? mb_sink_print(sink, "</svg>\n") : status;

@@ -1,10 +1,9 @@
 #include "sigmf.h"
 
+#include "json_fields.h"
 #include "path.h"
 
 #include <ctype.h>
-#include <jansson.h>
-#include <stdio.h>
 #include <string.h>
 
 static const char *const DATATYPES[] = {NULL, "cf32_le", "ci16_le", "ci8", "cu8"};
@@ -14,91 +13,19 @@ const char *mb_sigmf_datatype(mb_iq_format format)
     return DATATYPES[format];
 }
 
-/* Where a value stands, for messages: "air.sigmf-meta: captures[2]". */
-typedef struct place {
-    const char *name;
-    const char *list; /* "global", "captures", "annotations" */
-    size_t index;     /* SIZE_MAX for global */
-} place;
-
-static mb_status wrong(const place *at, const char *key, const char *what)
-{
-    if (at->index == SIZE_MAX) {
-        return mb_fail(MB_ERROR_FORMAT, at->name, "%s: %s %s %s; correct the file or record again", at->name,
-                       at->list, key, what);
-    }
-    return mb_fail(MB_ERROR_FORMAT, at->name, "%s: %s[%zu] %s %s; correct the file or record again", at->name,
-                   at->list, at->index, key, what);
-}
-
-/* Number of a key within low..high; *there tells whether it is stated. */
-static mb_status number(const json_t *object, const place *at, const char *key, double low, double high,
-                        double *value, bool *there)
-{
-    const json_t *item = json_object_get(object, key);
-
-    *there = item != NULL;
-    if (item == NULL) {
-        return MB_OK;
-    }
-    if (!json_is_number(item)) {
-        return wrong(at, key, "must be a number");
-    }
-    double found = json_number_value(item);
-    if (!(found >= low && found <= high)) {
-        char what[64];
-        (void)snprintf(what, sizeof what, "must be %g to %g", low, high);
-        return wrong(at, key, what);
-    }
-    *value = found;
-    return MB_OK;
-}
-
-/* Whole number of a key, 0 or more; *there tells whether it is stated. */
-static mb_status whole(const json_t *object, const place *at, const char *key, uint64_t *value, bool *there)
-{
-    const json_t *item = json_object_get(object, key);
-
-    *there = item != NULL;
-    if (item == NULL) {
-        return MB_OK;
-    }
-    if (!json_is_integer(item) || json_integer_value(item) < 0) {
-        return wrong(at, key, "must be a whole number, 0 or more");
-    }
-    *value = (uint64_t)json_integer_value(item);
-    return MB_OK;
-}
-
-/* Text of a key, cut to fit; "" when not stated. */
-static mb_status text_of(const json_t *object, const place *at, const char *key, char *out, size_t size)
-{
-    const json_t *item = json_object_get(object, key);
-
-    out[0] = '\0';
-    if (item == NULL) {
-        return MB_OK;
-    }
-    if (!json_is_string(item)) {
-        return wrong(at, key, "must be a text");
-    }
-    mb_text_copy(out, size, json_string_value(item));
-    return MB_OK;
-}
-
-static mb_status check_version(const json_t *global, const place *at)
+static mb_status check_version(const json_t *global, const mb_json_place *at)
 {
     char version[32];
-    mb_status status = text_of(global, at, "core:version", version, sizeof version);
+    mb_status status = mb_json_text(global, at, "core:version", version, sizeof version);
 
     if (status != MB_OK) {
         return status;
     }
     if (version[0] == '\0') {
-        return wrong(at, "core:version", "is missing");
+        return mb_json_wrong(at, "core:version", "is missing");
     }
     if (!isdigit((unsigned char)version[0]) || strchr(version, '.') == NULL) {
-        return wrong(at, "core:version", "must be a version such as 1.2.5");
+        return mb_json_wrong(at, "core:version", "must be a version such as 1.2.5");
     }
     if ((version[0] != '0' && version[0] != '1') || version[1] != '.') {
         return mb_fail(MB_ERROR_UNSUPPORTED, at->name,
@@ -107,16 +34,16 @@ static mb_status check_version(const json_t *global, const place *at)
     return MB_OK;
 }
 
-static mb_status check_datatype(const json_t *global, const place *at, mb_iq_format *format)
+static mb_status check_datatype(const json_t *global, const mb_json_place *at, mb_iq_format *format)
 {
     char datatype[32];
-    mb_status status = text_of(global, at, "core:datatype", datatype, sizeof datatype);
+    mb_status status = mb_json_text(global, at, "core:datatype", datatype, sizeof datatype);
 
     if (status != MB_OK) {
         return status;
     }
     if (datatype[0] == '\0') {
-        return wrong(at, "core:datatype", "is missing");
+        return mb_json_wrong(at, "core:datatype", "is missing");
     }
     for (int i = MB_IQ_CF32; i <= MB_IQ_CU8; i++) {
         if (strcmp(datatype, DATATYPES[i]) == 0) {
@@ -131,7 +58,7 @@ static mb_status check_datatype(const json_t *global, const place *at, mb_iq_for
 }
 
 /* Refuses recordings whose samples are not simply those of the .sigmf-data file beside. */
-static mb_status check_dataset(const json_t *global, const place *at)
+static mb_status check_dataset(const json_t *global, const mb_json_place *at)
 {
     if (json_is_true(json_object_get(global, "core:metadata_only"))) {
         return mb_fail(MB_ERROR_UNSUPPORTED, at->name,
@@ -147,7 +74,7 @@ static mb_status check_dataset(const json_t *global, const place *at)
     return MB_OK;
 }
 
-static mb_status parse_global(const json_t *global, const place *at, mb_sigmf *out)
+static mb_status parse_global(const json_t *global, const mb_json_place *at, mb_sigmf *out)
 {
     mb_status status = MB_OK;
     uint64_t channels = 1;
@@ -156,39 +83,41 @@ static mb_status parse_global(const json_t *global, const place *at, mb_sigmf *o
     (void)((status = check_version(global, at)) == MB_OK &&
            (status = check_datatype(global, at, &out->format)) == MB_OK &&
            (status = check_dataset(global, at)) == MB_OK &&
-           (status = number(global, at, "core:sample_rate", 1.0, 1e12, &out->rate_hz, &there)) == MB_OK &&
-           (status = whole(global, at, "core:num_channels", &channels, &there)) == MB_OK &&
-           (status = text_of(global, at, "core:description", out->description, sizeof out->description)) ==
+           (status = mb_json_number(global, at, "core:sample_rate", 1.0, 1e12, &out->rate_hz, &there)) ==
                MB_OK &&
-           (status = text_of(global, at, "core:author", out->author, sizeof out->author)) == MB_OK &&
-           (status = text_of(global, at, "core:sha512", out->sha512, sizeof out->sha512)) == MB_OK);
+           (status = mb_json_whole(global, at, "core:num_channels", &channels, &there)) == MB_OK &&
+           (status = mb_json_text(global, at, "core:description", out->description,
+                                  sizeof out->description)) == MB_OK &&
+           (status = mb_json_text(global, at, "core:author", out->author, sizeof out->author)) == MB_OK &&
+           (status = mb_json_text(global, at, "core:sha512", out->sha512, sizeof out->sha512)) == MB_OK);
     if (status == MB_OK && (channels < 1 || channels > 64)) {
-        return wrong(at, "core:num_channels", "must be 1 to 64");
+        return mb_json_wrong(at, "core:num_channels", "must be 1 to 64");
     }
     if (status == MB_OK && out->sha512[0] != '\0' && strspn(out->sha512, "0123456789abcdefABCDEF") != 128) {
-        return wrong(at, "core:sha512", "must be 128 hexadecimal digits");
+        return mb_json_wrong(at, "core:sha512", "must be 128 hexadecimal digits");
     }
     out->channels = (size_t)channels;
     return status;
 }
 
-static mb_status parse_capture(const json_t *item, const place *at, mb_iq_capture *out)
+static mb_status parse_capture(const json_t *item, const mb_json_place *at, mb_iq_capture *out)
 {
     uint64_t header = 0;
     bool there = false;
-    mb_status status = whole(item, at, "core:sample_start", &out->sample_start, &there);
+    mb_status status = mb_json_whole(item, at, "core:sample_start", &out->sample_start, &there);
 
     if (status == MB_OK && !there) {
-        return wrong(at, "core:sample_start", "is missing");
+        return mb_json_wrong(at, "core:sample_start", "is missing");
     }
     if (status == MB_OK) {
-        status = number(item, at, "core:frequency", -1e12, 1e12, &out->frequency_hz, &out->has_frequency);
+        status =
+            mb_json_number(item, at, "core:frequency", -1e12, 1e12, &out->frequency_hz, &out->has_frequency);
     }
     if (status == MB_OK) {
-        status = text_of(item, at, "core:datetime", out->datetime, sizeof out->datetime);
+        status = mb_json_text(item, at, "core:datetime", out->datetime, sizeof out->datetime);
     }
     if (status == MB_OK) {
-        status = whole(item, at, "core:header_bytes", &header, &there);
+        status = mb_json_whole(item, at, "core:header_bytes", &header, &there);
     }
     if (status == MB_OK && header > 0) {
         return mb_fail(
@@ -207,25 +136,25 @@ static bool says(const json_t *object, const char *key, const char *word)
     return value != NULL && strcmp(value, word) == 0;
 }
 
-static mb_status parse_annotation(const json_t *item, const place *at, mb_iq_annotation *out)
+static mb_status parse_annotation(const json_t *item, const mb_json_place *at, mb_iq_annotation *out)
 {
     const json_t *detail = json_object_get(item, "signal:detail");
     bool there = false, has_low = false, has_high = false;
-    mb_status status = whole(item, at, "core:sample_start", &out->sample_start, &there);
+    mb_status status = mb_json_whole(item, at, "core:sample_start", &out->sample_start, &there);
 
     if (status == MB_OK && !there) {
-        return wrong(at, "core:sample_start", "is missing");
+        return mb_json_wrong(at, "core:sample_start", "is missing");
     }
     (void)(status == MB_OK &&
-           (status = whole(item, at, "core:sample_count", &out->sample_count, &there)) == MB_OK &&
-           (status = number(item, at, "core:freq_lower_edge", -1e12, 1e12, &out->low_hz, &has_low)) ==
+           (status = mb_json_whole(item, at, "core:sample_count", &out->sample_count, &there)) == MB_OK &&
+           (status = mb_json_number(item, at, "core:freq_lower_edge", -1e12, 1e12, &out->low_hz, &has_low)) ==
                MB_OK &&
-           (status = number(item, at, "core:freq_upper_edge", -1e12, 1e12, &out->high_hz, &has_high)) ==
-               MB_OK &&
-           (status = text_of(item, at, "core:label", out->label, sizeof out->label)) == MB_OK &&
-           (status = text_of(item, at, "core:comment", out->comment, sizeof out->comment)) == MB_OK);
+           (status = mb_json_number(item, at, "core:freq_upper_edge", -1e12, 1e12, &out->high_hz,
+                                    &has_high)) == MB_OK &&
+           (status = mb_json_text(item, at, "core:label", out->label, sizeof out->label)) == MB_OK &&
+           (status = mb_json_text(item, at, "core:comment", out->comment, sizeof out->comment)) == MB_OK);
     if (status == MB_OK && has_low != has_high) {
-        return wrong(at, has_low ? "core:freq_upper_edge" : "core:freq_lower_edge", "is missing");
+        return mb_json_wrong(at, has_low ? "core:freq_upper_edge" : "core:freq_lower_edge", "is missing");
     }
     out->has_edges = has_low;
     out->suppressed_carrier_dsb = says(detail, "type", "analog") && says(detail, "mod_class", "dsb") &&
@@ -243,13 +172,14 @@ static mb_status parse_captures(const json_t *list, const char *name, mb_sigmf *
         return mb_fail_memory("SigMF captures");
     }
     for (size_t i = 0; i < count && status == MB_OK; i++) {
-        const place at = {name, "captures", i};
-        status = json_is_object(json_array_get(list, i)) ? MB_OK : wrong(&at, "", "must be an object");
+        const mb_json_place at = {name, "captures", i};
+        status =
+            json_is_object(json_array_get(list, i)) ? MB_OK : mb_json_wrong(&at, "", "must be an object");
         if (status == MB_OK) {
             status = parse_capture(json_array_get(list, i), &at, &out->captures[i]);
         }
         if (status == MB_OK && i > 0 && out->captures[i].sample_start < out->captures[i - 1].sample_start) {
-            status = wrong(&at, "core:sample_start", "is less than that of the capture before");
+            status = mb_json_wrong(&at, "core:sample_start", "is less than that of the capture before");
         }
         out->capture_count = i + 1;
     }
@@ -266,8 +196,9 @@ static mb_status parse_annotations(const json_t *list, const char *name, mb_sigm
         return mb_fail_memory("SigMF annotations");
     }
     for (size_t i = 0; i < count && status == MB_OK; i++) {
-        const place at = {name, "annotations", i};
-        status = json_is_object(json_array_get(list, i)) ? MB_OK : wrong(&at, "", "must be an object");
+        const mb_json_place at = {name, "annotations", i};
+        status =
+            json_is_object(json_array_get(list, i)) ? MB_OK : mb_json_wrong(&at, "", "must be an object");
         if (status == MB_OK) {
             status = parse_annotation(json_array_get(list, i), &at, &out->annotations[i]);
         }
@@ -281,7 +212,7 @@ static mb_status parse_root(const json_t *root, const char *name, mb_sigmf *out)
     const json_t *global = json_object_get(root, "global");
     const json_t *captures = json_object_get(root, "captures");
     const json_t *annotations = json_object_get(root, "annotations");
-    const place at = {name, "global", SIZE_MAX};
+    const mb_json_place at = {name, "global", SIZE_MAX};
 
     if (!json_is_object(global) || !json_is_array(captures) || !json_is_array(annotations)) {
         const char *part = !json_is_object(global)    ? "global"

@@ -35,7 +35,7 @@ static char *follow_link(const char *path)
     char *copy = mb_allocate(strlen(from) + 1, 1);
 
     if (copy != NULL) {
-        memcpy(copy, from, strlen(from));
+        memcpy(copy, from, strlen(from) + 1);
     }
     free(real);
     return copy;
@@ -265,7 +265,7 @@ void mb_sink_abandon(mb_sink *sink)
     if (sink == NULL || sink->closed) {
         return;
     }
-    bool made = sink->fd >= 0 && !sink->direct;
+    bool made = sink->fd >= 0 && sink->partial != NULL;
     (void)close_descriptor(sink);
     if (made) {
         (void)unlink(sink->partial);
