@@ -58,7 +58,8 @@ static mb_status add_buffers(mb_score *score, size_t max_lag)
 
     for (int i = 0; i < 2; i++) {
         score->chunk[i] = mb_allocate(MB_SCORE_CHUNK, sizeof *score->chunk[i]);
-        score->queue[i].samples = mb_allocate(max_lag + MB_SCORE_CHUNK, sizeof *score->queue[i].samples);
+        score->queue[i].room = max_lag + MB_SCORE_CHUNK;
+        score->queue[i].samples = mb_allocate(score->queue[i].room, sizeof *score->queue[i].samples);
         had = had && score->chunk[i] != NULL && score->queue[i].samples != NULL;
     }
     return had ? MB_OK : mb_fail(MB_ERROR_MEMORY, "", "no memory for a score");
@@ -154,7 +155,7 @@ mb_status mb_score_aligned(mb_score *score)
     if (score->pass != MB_PASS_ALIGN) {
         return mb_fail(MB_ERROR_ARGUMENT, "", "the first pass of this score has ended already");
     }
-    mb_score_flush(score);
+    mb_score_take(score, NULL, NULL, mb_fir_delay_samples(score->band[0])); /* what the filters still hold */
     score->pass = MB_PASS_WAIT;
     mb_status status = mb_lag_finder_end(score->finder, &score->lag);
     if (status != MB_OK) {
@@ -182,7 +183,7 @@ mb_status mb_score_finish(mb_score *score, mb_score_result *result)
     if (score->pass != MB_PASS_FIT) {
         return mb_fail(MB_ERROR_ARGUMENT, "", "a score is finished once, after its second pass");
     }
-    mb_score_flush(score);
+    mb_score_take(score, NULL, NULL, mb_fir_delay_samples(score->band[0])); /* what the filters still hold */
     score->pass = MB_PASS_DONE;
     mb_fir_fit_result fit = mb_fir_fit_solve(score->whole);
     if (fit.message_power <= 0.0 || fit.error_power <= 0.0) {

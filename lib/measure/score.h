@@ -17,7 +17,9 @@ typedef enum mb_score_pass { MB_PASS_ALIGN, MB_PASS_WAIT, MB_PASS_FIT, MB_PASS_D
 typedef struct mb_score_queue {
     float *samples;
     size_t fill;
+    size_t room;
     size_t drop; /* of the next samples, not to be queued */
+    size_t tail; /* what the filter still gives after the end of the stream */
 } mb_score_queue;
 
 typedef struct mb_score_segment {
@@ -51,9 +53,8 @@ struct mb_score {
 void mb_score_restart_bands(mb_score *score);
 /* Forgets the segment being filled. */
 void mb_score_restart_segment(mb_score_segment *segment);
-/* Takes samples of both streams through the band filters into the pass that is on. */
+/* Takes samples of both streams through the band filters into the pass that is on; NULL: that stream has
+ * ended. */
 void mb_score_take(mb_score *score, const float *message, const float *audio, size_t count);
-/* Zeros bring out what the band filters still hold. */
-void mb_score_flush(mb_score *score);
 
 #endif

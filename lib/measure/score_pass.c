@@ -6,7 +6,8 @@ void mb_score_restart_bands(mb_score *score)
 {
     mb_fir_reset(score->band[0]);
     mb_fir_reset(score->band[1]);
-    score->settle = (size_t)mb_fir_delay_samples(score->band[0]);
+    score->settle = mb_fir_delay_samples(score->band[0]);
+    score->queue[0].tail = score->queue[1].tail = score->settle;
 }
 
 void mb_score_restart_segment(mb_score_segment *segment)
@@ -61,13 +62,15 @@ static void take_pair(mb_score *score, float message, float audio)
     }
 }
 
+/* What finds no room has no partner either: the other stream has ended. */
 static void push(mb_score_queue *queue, const float *samples, size_t count)
 {
-    size_t drop = queue->drop < count ? queue->drop : count;
+    size_t drop = queue->drop < count ? queue->drop : count, room = queue->room - queue->fill;
 
     queue->drop -= drop;
-    memcpy(queue->samples + queue->fill, samples + drop, (count - drop) * sizeof *samples);
-    queue->fill += count - drop;
+    count = count - drop < room ? count - drop : room;
+    memcpy(queue->samples + queue->fill, samples + drop, count * sizeof *samples);
+    queue->fill += count;
 }
 
 static void pop(mb_score_queue *queue, size_t count)
@@ -76,10 +79,10 @@ static void pop(mb_score_queue *queue, size_t count)
     memmove(queue->samples, queue->samples + count, queue->fill * sizeof *queue->samples);
 }
 
-static void take_fit(mb_score *score, const float *message, const float *audio, size_t count)
+static void take_fit(mb_score *score, const size_t count[2], size_t skip)
 {
-    push(&score->queue[0], message, count);
-    push(&score->queue[1], audio, count);
+    push(&score->queue[0], score->chunk[0] + skip, count[0]);
+    push(&score->queue[1], score->chunk[1] + skip, count[1]);
     size_t both = score->queue[0].fill < score->queue[1].fill ? score->queue[0].fill : score->queue[1].fill;
     for (size_t i = 0; i < both; i++) {
         take_pair(score, score->queue[0].samples[i], score->queue[1].samples[i]);
@@ -88,19 +91,47 @@ static void take_fit(mb_score *score, const float *message, const float *audio, 
     pop(&score->queue[1], both);
 }
 
-/* Band-limits what stands in the chunks and hands it to the pass that is on. */
-static void take_chunk(mb_score *score, size_t count)
+/* Copies one stream, or zeros if it has ended, into its chunk and band-limits it there. Returns how many
+ * values were not finite. */
+static size_t fill_chunk(mb_score *score, int stream, const float *samples, size_t count)
 {
-    mb_fir_process_f32(score->band[0], score->chunk[0], count, score->chunk[0]);
-    mb_fir_process_f32(score->band[1], score->chunk[1], count, score->chunk[1]);
-    size_t drop = score->settle < count ? score->settle : count;
-    const float *message = score->chunk[0] + drop, *audio = score->chunk[1] + drop;
+    float *chunk = score->chunk[stream];
+    size_t bad = 0;
+
+    if (samples != NULL) {
+        memcpy(chunk, samples, count * sizeof *samples);
+        bad = mb_scrub_f32(chunk, count);
+    } else {
+        memset(chunk, 0, count * sizeof *chunk);
+    }
+    mb_fir_process_f32(score->band[stream], chunk, count, chunk);
+    return bad;
+}
+
+/* Of a stream that has ended only what its filter still held belongs to it. */
+static size_t length_left(mb_score_queue *queue, const float *samples, size_t count)
+{
+    if (samples == NULL) {
+        count = queue->tail < count ? queue->tail : count;
+        queue->tail -= count;
+    }
+    return count;
+}
+
+static void take_chunk(mb_score *score, const float *message, const float *audio, size_t count)
+{
+    size_t bad = fill_chunk(score, 0, message, count) + fill_chunk(score, 1, audio, count);
+    size_t drop = score->settle < count ? score->settle : count, left = count - drop;
+
     score->settle -= drop;
     if (score->pass == MB_PASS_ALIGN) {
-        mb_lag_finder_add(score->finder, message, audio, count - drop);
-        take_frames(score, message, count - drop);
+        score->non_finite += bad;
+        mb_lag_finder_add(score->finder, score->chunk[0] + drop, score->chunk[1] + drop, left);
+        take_frames(score, score->chunk[0] + drop, left);
     } else {
-        take_fit(score, message, audio, count - drop);
+        const size_t counts[2] = {length_left(&score->queue[0], message, left),
+                                  length_left(&score->queue[1], audio, left)};
+        take_fit(score, counts, drop);
     }
 }
 
@@ -108,27 +139,9 @@ void mb_score_take(mb_score *score, const float *message, const float *audio, si
 {
     while (count > 0) {
         size_t part = count < MB_SCORE_CHUNK ? count : MB_SCORE_CHUNK;
-        memcpy(score->chunk[0], message, part * sizeof *message);
-        memcpy(score->chunk[1], audio, part * sizeof *audio);
-        size_t bad = mb_scrub_f32(score->chunk[0], part) + mb_scrub_f32(score->chunk[1], part);
-        score->non_finite += score->pass == MB_PASS_ALIGN ? bad : 0;
-        take_chunk(score, part);
-        message += part;
-        audio += part;
+        take_chunk(score, message, audio, part);
+        message += message != NULL ? part : 0;
+        audio += audio != NULL ? part : 0;
         count -= part;
-    }
-}
-
-/* Zeros bring out what the band filters still hold. */
-void mb_score_flush(mb_score *score)
-{
-    size_t left = (size_t)mb_fir_delay_samples(score->band[0]);
-
-    while (left > 0) {
-        size_t part = left < MB_SCORE_CHUNK ? left : MB_SCORE_CHUNK;
-        memset(score->chunk[0], 0, part * sizeof *score->chunk[0]);
-        memset(score->chunk[1], 0, part * sizeof *score->chunk[1]);
-        take_chunk(score, part);
-        left -= part;
     }
 }

@@ -117,6 +117,37 @@ static void gain_and_polarity_of_the_whole_are_free(void **state)
     mb_release(material);
 }
 
+/* The audio ends 2 s before the message: what has no partner is not scored, as if the message ended there
+ * too. The two differ by what the band filter rings on at the end of the message. */
+static void what_has_no_partner_is_not_scored(void **state)
+{
+    enum { SHORT = COUNT - 2 * RATE };
+    recording *material = material_of(431, 0.0, 0.01);
+    mb_score_settings settings = mb_score_settings_default();
+    mb_score *score = NULL;
+    mb_score_result both, one;
+
+    (void)state;
+    assert_ok(mb_score_create(&settings, &score));
+    mb_score_align(score, material->message, material->audio, SHORT);
+    assert_ok(mb_score_aligned(score));
+    mb_score_fit(score, material->message, material->audio, SHORT);
+    assert_ok(mb_score_finish(score, &both));
+    mb_score_reset(score);
+    mb_score_align(score, material->message, material->audio, SHORT);
+    mb_score_align(score, material->message + SHORT, NULL, COUNT - SHORT);
+    assert_ok(mb_score_aligned(score));
+    mb_score_fit(score, material->message, material->audio, SHORT);
+    mb_score_fit(score, material->message + SHORT, NULL, COUNT - SHORT);
+    assert_ok(mb_score_finish(score, &one));
+    assert_near(one.scored_s, both.scored_s, 0.0);
+    assert_near(one.scored_s, (SHORT - 431.0) / RATE, 1e-9);
+    assert_near(one.snr_db, both.snr_db, 0.01);
+    assert_int_equal(one.segments, both.segments);
+    mb_score_destroy(score);
+    mb_release(material);
+}
+
 static bool forbid(void *user, size_t bytes)
 {
     (void)bytes;
@@ -202,6 +233,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(output_snr_agrees_with_least_squares_of_scipy),
         cmocka_unit_test(gain_and_polarity_of_the_whole_are_free),
+        cmocka_unit_test(what_has_no_partner_is_not_scored),
         cmocka_unit_test(cuts_and_a_reset_change_no_bit_and_streaming_takes_no_memory),
         cmocka_unit_test(wrong_settings_are_named),
         cmocka_unit_test(silence_and_passes_out_of_turn_are_told),

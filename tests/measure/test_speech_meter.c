@@ -2,10 +2,9 @@
 #define MEASURE_REFERENCE_LEVELS
 #include "check.h"
 #include "measure_reference.h"
+#include "speech.h"
 
 #include "mirrorband/measure.h"
-
-#include <sndfile.h>
 
 enum { RATE = 8000, SECONDS = 20, COUNT = RATE * SECONDS };
 
@@ -53,25 +52,6 @@ static void sine_bursts_have_the_level_of_the_recommendation(void **state)
         assert_near(result.active_level_db, level_rows[2 + i].level_db, 0.001);
         assert_near(result.activity, level_rows[2 + i].activity, 1e-4);
     }
-}
-
-static float *speech(const char *name, size_t *count, double *rate_hz)
-{
-    char path[256];
-    SF_INFO info = {0};
-
-    (void)snprintf(path, sizeof path, "/usr/share/sounds/alsa/%s", name);
-    SNDFILE *file = sf_open(path, SFM_READ, &info);
-    if (file == NULL) {
-        return NULL;
-    }
-    float *samples = mb_allocate((size_t)info.frames, sizeof *samples);
-    assert_non_null(samples);
-    assert_int_equal(sf_read_float(file, samples, info.frames), info.frames);
-    assert_int_equal(sf_close(file), 0);
-    *count = (size_t)info.frames;
-    *rate_hz = info.samplerate;
-    return samples;
 }
 
 /* FACTS E "P.56 of Debian alsa-utils 1.2.8-1": two decimals are given there; a thousandth against the

@@ -216,8 +216,9 @@ MB_API mb_status mb_sinad(const mb_spectrum *spectrum, double low_hz, double hig
 /**
  * Output SNR: what of the audio the best FIR of at most fir_span_s makes of the message, over the rest; one
  * gain and one polarity for the whole recording. Two passes over the same two streams, in bounded memory:
- * mb_score_align... mb_score_aligned, then mb_score_fit... mb_score_finish. Message and audio come in step
- * (pad the shorter with zeros). Both are limited to 250-2800 Hz here.
+ * mb_score_align... mb_score_aligned, then mb_score_fit... mb_score_finish. Message and audio come in step;
+ * NULL in place of one says that it has ended, and what has no partner is not scored. Both are limited to
+ * 250-2800 Hz here.
  */
 typedef struct mb_score mb_score;
 
@@ -246,7 +247,7 @@ typedef struct mb_score_result {
 MB_API mb_score_settings mb_score_settings_default(void);
 /** Errors: ARGUMENT (field named), MEMORY. Thread: control. */
 MB_API mb_status mb_score_create(const mb_score_settings *settings, mb_score **out);
-/** First pass: takes count samples of each. Thread: stream. */
+/** First pass: takes count samples of each (NULL: that one has ended). Thread: stream. */
 MB_API void mb_score_align(mb_score *score, const float *message, const float *audio, size_t count);
 /** Ends the first pass: finds the delay. Errors: NO_SIGNAL (message or audio silent). Thread: control. */
 MB_API mb_status mb_score_aligned(mb_score *score);
