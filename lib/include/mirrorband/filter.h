@@ -52,7 +52,8 @@ MB_API void mb_kaiser_window(size_t count, double beta, double *window);
 MB_API mb_status mb_design_lowpass(double cutoff_hz, double transition_hz, double attenuation_db,
                                    double rate_hz, float **taps, size_t *count);
 
-/** Linear-phase band-pass, -6 dB at low_hz and high_hz, gain 1 between. As mb_design_lowpass. */
+/** Linear-phase band-pass, -6 dB at low_hz and high_hz, gain 1 between. As mb_design_lowpass.
+ * Thread: control. */
 MB_API mb_status mb_design_bandpass(double low_hz, double high_hz, double transition_hz,
                                     double attenuation_db, double rate_hz, float **taps, size_t *count);
 
@@ -117,6 +118,7 @@ typedef struct mb_resampler_settings {
  */
 typedef struct mb_resampler mb_resampler;
 
+/** Thread: any. */
 MB_API mb_resampler_settings mb_resampler_settings_default(void);
 /** Errors: ARGUMENT with the field, MEMORY. Thread: control. */
 MB_API mb_status mb_resampler_create(const mb_resampler_settings *settings, mb_resampler **out);
@@ -145,8 +147,18 @@ typedef struct mb_decimator_settings {
     double attenuation_db; /* of all that would fall into the passband, 40 to 100 dB */
 } mb_decimator_settings;
 
+/**
+ * Wideband is touched once: one short complex filter, rotated to the wanted frequency, decimates by a large
+ * factor (three boxes whose zeros are spread over the bands that fold onto the wanted one), the mixing that
+ * is left is done at the low rate with an exact phase, and a resampler that also levels the passband makes
+ * the exact rate. Output 0 is at the time of input 0, seen through a delay of mb_decimator_delay_s. Between
+ * passband_hz and rate_out_hz - passband_hz the gain falls, and what folds there stays out of the passband.
+ * With equal rates it only mixes, without delay. Method: L. Lo Presti, IEEE Trans. CAS-II 47 (2000) 1232, for
+ * the rotated zeros.
+ */
 typedef struct mb_decimator mb_decimator;
 
+/** Thread: any. */
 MB_API mb_decimator_settings mb_decimator_settings_default(void);
 /** Errors: ARGUMENT with the field, MEMORY. Thread: control. */
 MB_API mb_status mb_decimator_create(const mb_decimator_settings *settings, mb_decimator **out);
@@ -155,7 +167,9 @@ MB_API mb_status mb_decimator_create(const mb_decimator_settings *settings, mb_d
 MB_API size_t mb_decimator_process_cf32(mb_decimator *decimator, const mb_cf32 *in, size_t n, mb_cf32 *out);
 /** The same for 16-bit samples; full scale 32768 becomes 1. Thread: stream. */
 MB_API size_t mb_decimator_process_ci16(mb_decimator *decimator, const mb_ci16 *in, size_t n, mb_cf32 *out);
+/** Most samples that n inputs can give. Thread: any. */
 MB_API size_t mb_decimator_output_bound(const mb_decimator *decimator, size_t n);
+/** Time by which the output lags, s. Thread: any. */
 MB_API double mb_decimator_delay_s(const mb_decimator *decimator);
 /** Thread: stream. */
 MB_API mb_filter_counts mb_decimator_state(const mb_decimator *decimator);
@@ -175,15 +189,25 @@ typedef struct mb_interpolator_settings {
     double attenuation_db; /* of images, 40 to 100 dB */
 } mb_interpolator_settings;
 
+/**
+ * A resampler makes 48 to 96 kHz (or more, where the passband is wide), half-band filters double the rate as
+ * often as it takes, each only as long as the images of the passband ask for, and an oscillator moves it to
+ * offset_hz. Output 0 is at the time of input 0, seen through a delay of mb_interpolator_delay_s. The
+ * half-band filters are the midpoint interpolators of Lagrange, flat at both ends. Where rate_in_hz is
+ * rate_out_hz it only mixes.
+ */
 typedef struct mb_interpolator mb_interpolator;
 
+/** Thread: any. */
 MB_API mb_interpolator_settings mb_interpolator_settings_default(void);
 /** Errors: ARGUMENT with the field, MEMORY. Thread: control. */
 MB_API mb_status mb_interpolator_create(const mb_interpolator_settings *settings, mb_interpolator **out);
 /** Takes all n samples; returns how many came out. Thread: stream. */
 MB_API size_t mb_interpolator_process(mb_interpolator *interpolator, const mb_cf32 *in, size_t n,
                                       mb_cf32 *out);
+/** Most samples that n inputs can give. Thread: any. */
 MB_API size_t mb_interpolator_output_bound(const mb_interpolator *interpolator, size_t n);
+/** Time by which the output lags, s. Thread: any. */
 MB_API double mb_interpolator_delay_s(const mb_interpolator *interpolator);
 /** Thread: stream. */
 MB_API mb_filter_counts mb_interpolator_state(const mb_interpolator *interpolator);
