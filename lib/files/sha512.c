@@ -56,21 +56,34 @@ static void expand(const unsigned char *block, uint64_t *schedule)
     }
 }
 
+/* One round; the words move on by one place by renaming them in the call. */
+static inline void turn(uint64_t a, uint64_t b, uint64_t c, uint64_t *d, uint64_t e, uint64_t f, uint64_t g,
+                        uint64_t *h, uint64_t mixed)
+{
+    uint64_t sum1 = turn_right(e, 14) ^ turn_right(e, 18) ^ turn_right(e, 41);
+    uint64_t sum0 = turn_right(a, 28) ^ turn_right(a, 34) ^ turn_right(a, 39);
+    uint64_t first = *h + sum1 + ((e & f) ^ (~e & g)) + mixed;
+
+    *d += first;
+    *h = first + sum0 + ((a & b) ^ (a & c) ^ (b & c));
+}
+
 static void take_block(mb_sha512 *hash, const unsigned char *block)
 {
     uint64_t schedule[80], s[8];
 
     expand(block, schedule);
     memcpy(s, hash->word, sizeof s);
-    for (int i = 0; i < 80; i++) {
-        uint64_t sum1 = turn_right(s[4], 14) ^ turn_right(s[4], 18) ^ turn_right(s[4], 41);
-        uint64_t choice = (s[4] & s[5]) ^ (~s[4] & s[6]);
-        uint64_t first = s[7] + sum1 + choice + ROUND_KEYS[i] + schedule[i];
-        uint64_t sum0 = turn_right(s[0], 28) ^ turn_right(s[0], 34) ^ turn_right(s[0], 39);
-        uint64_t majority = (s[0] & s[1]) ^ (s[0] & s[2]) ^ (s[1] & s[2]);
-        memmove(s + 1, s, 7 * sizeof *s);
-        s[4] += first;
-        s[0] = first + sum0 + majority;
+    for (int i = 0; i < 80; i += 8) {
+        const uint64_t *key = ROUND_KEYS + i, *word = schedule + i;
+        turn(s[0], s[1], s[2], &s[3], s[4], s[5], s[6], &s[7], key[0] + word[0]);
+        turn(s[7], s[0], s[1], &s[2], s[3], s[4], s[5], &s[6], key[1] + word[1]);
+        turn(s[6], s[7], s[0], &s[1], s[2], s[3], s[4], &s[5], key[2] + word[2]);
+        turn(s[5], s[6], s[7], &s[0], s[1], s[2], s[3], &s[4], key[3] + word[3]);
+        turn(s[4], s[5], s[6], &s[7], s[0], s[1], s[2], &s[3], key[4] + word[4]);
+        turn(s[3], s[4], s[5], &s[6], s[7], s[0], s[1], &s[2], key[5] + word[5]);
+        turn(s[2], s[3], s[4], &s[5], s[6], s[7], s[0], &s[1], key[6] + word[6]);
+        turn(s[1], s[2], s[3], &s[4], s[5], s[6], s[7], &s[0], key[7] + word[7]);
     }
     for (int i = 0; i < 8; i++) {
         hash->word[i] += s[i];

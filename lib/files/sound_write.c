@@ -108,8 +108,8 @@ static mb_status finish_write(mb_sound *sound, size_t n, sf_count_t made)
         sound->header_frame = sound->frames + (uint64_t)sound->info.samplerate;
         if ((sound->info.format & SF_FORMAT_TYPEMASK) != SF_FORMAT_FLAC) {
             (void)sf_command(sound->handle, SFC_UPDATE_HEADER_NOW, NULL, 0);
-            sound->status = sound->status == MB_OK ? mb_sink_flush(sound->sink) : sound->status;
         }
+        sound->status = sound->status == MB_OK ? mb_sink_flush(sound->sink) : sound->status;
     }
     return sound->status;
 }

@@ -116,6 +116,36 @@ static void a_killed_writer_leaves_a_readable_file(void **state)
     (void)remove(path_in("killed.partial.sigmf-data"));
 }
 
+static void a_killed_writer_of_flac_leaves_a_readable_file(void **state)
+{
+    const char *path = path_in("killed.flac");
+    mb_audio_reader *reader = NULL;
+    float block[1000];
+    size_t got = 0, count = 0;
+    pid_t child = fork();
+
+    (void)state;
+    if (child == 0) {
+        mb_audio_writer_settings settings = {.rate_hz = 8000.0};
+        mb_audio_writer *writer = NULL;
+        mb_cf32 *samples = make_samples(40000, 1);
+        assert_ok(mb_audio_writer_create(path, &settings, &writer));
+        assert_ok(mb_audio_writer_write(writer, &samples->re, 80000));
+        assert_ok(mb_audio_writer_write(writer, &samples->re, 80000));
+        (void)kill(getpid(), SIGKILL);
+    }
+    assert_int_equal(waitpid(child, NULL, 0), child);
+    assert_ok(mb_audio_reader_open(path_in("killed.partial.flac"), NULL, &reader));
+    assert_int_equal(mb_audio_reader_info(reader).samples, 0); /* not known: the header was never finished */
+    do {
+        assert_ok(mb_audio_read(reader, block, 1000, &got));
+        count += got;
+    } while (got > 0);
+    assert_in_range(count, 140000, 160000);
+    mb_audio_reader_close(reader);
+    (void)remove(path_in("killed.partial.flac"));
+}
+
 static void a_full_disk_is_one_sentence(void **state)
 {
     const char *path = path_in("full.cf32");
@@ -265,6 +295,7 @@ int main(void)
         cmocka_unit_test(an_abandoned_output_leaves_what_was_there),
         cmocka_unit_test(an_interrupted_output_is_kept_and_valid),
         cmocka_unit_test(a_killed_writer_leaves_a_readable_file),
+        cmocka_unit_test(a_killed_writer_of_flac_leaves_a_readable_file),
         cmocka_unit_test(a_full_disk_is_one_sentence),
         cmocka_unit_test(an_output_that_grows_too_large_is_removed),
         cmocka_unit_test(a_place_that_cannot_be_written_to_is_told_at_once),

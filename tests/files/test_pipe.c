@@ -1,6 +1,9 @@
 /* Pipes carry raw samples in both directions, at once, and can be rewound when asked for. */
 #include <fcntl.h>
 #include <pthread.h>
+#include <signal.h>
+#include <stdatomic.h>
+#include <time.h>
 
 #include "samples.h"
 
@@ -240,6 +243,65 @@ static void a_file_as_standard_input_knows_its_length(void **state)
     (void)close(kept);
 }
 
+static atomic_bool interrupted;
+
+static void ignore(int number)
+{
+    (void)number;
+}
+
+typedef struct disturb {
+    pthread_t reader;
+    feed first, second;
+} disturb;
+
+/* Sends part of a sample, then signals until the reader has noticed one, then the rest. */
+static void *disturb_reader(void *user)
+{
+    disturb *job = user;
+
+    (void)!write(job->first.to, job->first.bytes, job->first.count);
+    while (!atomic_load(&interrupted)) {
+        (void)pthread_kill(job->reader, SIGUSR1);
+        (void)nanosleep(&(struct timespec){.tv_nsec = 1000000}, NULL);
+    }
+    return feed_pipe(&job->second);
+}
+
+static void a_signal_breaks_a_read_off_and_loses_nothing(void **state)
+{
+    mb_cf32 samples[4] = {{0.1f, 0.2f}, {0.3f, 0.4f}, {0.5f, 0.6f}, {0.7f, 0.8f}}, back[5];
+    const unsigned char *bytes = (const unsigned char *)samples;
+    struct sigaction action = {.sa_handler = ignore};
+    mb_iq_open options = {.format = MB_IQ_CF32, .rate_hz = 48000.0};
+    mb_iq_reader *reader = NULL;
+    swap in = swap_in(0);
+    disturb job = {
+        pthread_self(), {in.other, bytes, 19, 19}, {in.other, bytes + 19, sizeof samples - 19, 64}};
+    pthread_t thread;
+    size_t done = 0, got = 0;
+    mb_status status = MB_OK;
+
+    (void)state;
+    assert_int_equal(sigaction(SIGUSR1, &action, NULL), 0);
+    assert_ok(mb_iq_reader_open("-", &options, &reader));
+    assert_int_equal(pthread_create(&thread, NULL, disturb_reader, &job), 0);
+    do {
+        status = mb_iq_read(reader, back + done, 5 - done, &got);
+        done += got;
+        if (status == MB_ERROR_INTERRUPTED) {
+            atomic_store(&interrupted, true);
+        }
+    } while (status == MB_ERROR_INTERRUPTED || (status == MB_OK && got > 0 && done < 5));
+    assert_ok(status);
+    assert_true(atomic_load(&interrupted));
+    assert_int_equal(done, 4);
+    assert_memory_equal(back, samples, sizeof samples);
+    (void)pthread_join(thread, NULL);
+    mb_iq_reader_close(reader);
+    swap_back(&in);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -250,6 +312,7 @@ int main(void)
         cmocka_unit_test(what_is_written_comes_out_at_once),
         cmocka_unit_test(audio_goes_through_a_pipe),
         cmocka_unit_test(a_file_as_standard_input_knows_its_length),
+        cmocka_unit_test(a_signal_breaks_a_read_off_and_loses_nothing),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

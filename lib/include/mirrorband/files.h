@@ -16,7 +16,9 @@
  *
  * All readers and writers belong to one thread at a time, allocate when opened and hold a fixed amount of
  * memory however long the input. Their functions are called from control threads: they read and write files.
- * Every failure is one sentence in mb_last_fault()->text with what, where and the remedy.
+ * Every failure is one sentence in mb_last_fault()->text with what, where and the remedy. Programs that write
+ * to pipes should ignore SIGPIPE, so that a closed pipe is such a sentence, too. A read that a signal handler
+ * breaks off returns MB_ERROR_INTERRUPTED; nothing is lost and the same call may be made again.
  */
 #ifndef MIRRORBAND_FILES_H
 #define MIRRORBAND_FILES_H
@@ -165,10 +167,10 @@ MB_API mb_status mb_iq_reader_annotation(const mb_iq_reader *reader, size_t inde
                                          mb_iq_annotation *annotation);
 
 /**
- * Reads up to n samples into out; *got tells how many. Less than n only at the end; 0 = nothing is left.
- * Non-finite samples become zero and are counted.
- * Errors: FILE, FORMAT (cut in the middle of a sample; what came before has been handed out), MEMORY.
- * Thread: control.
+ * Reads up to n samples into out; *got tells how many, also when it fails. Less than n only at the end or on
+ * a failure; 0 and MB_OK = nothing is left. Non-finite samples become zero and are counted. Errors: FILE,
+ * FORMAT (cut in the middle of a sample, or shorter than the header says; what came before has been handed
+ * out), INTERRUPTED. Thread: control.
  */
 MB_API mb_status mb_iq_read(mb_iq_reader *reader, mb_cf32 *out, size_t n, size_t *got);
 
