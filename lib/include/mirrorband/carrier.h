@@ -163,7 +163,7 @@ MB_API void mb_recovery_process(mb_recovery *recovery, const mb_cf32 *in, size_t
 /** Samples by which the output lags the input. Thread: any. */
 MB_API size_t mb_recovery_delay_samples(const mb_recovery *recovery);
 
-/** Thread: same as process, or any while it does not run. */
+/** State after the last sample processed. Thread: stream. */
 MB_API mb_carrier_state mb_recovery_state(const mb_recovery *recovery);
 
 /** Back to the start. Thread: stream. */
@@ -247,6 +247,7 @@ typedef struct mb_costas_state {
 
 typedef struct mb_costas mb_costas;
 
+/** Loop of 5 Hz. Thread: any. */
 MB_API mb_costas_settings mb_costas_settings_default(void);
 /** Errors: ARGUMENT with the field, MEMORY. Thread: control. */
 MB_API mb_status mb_costas_create(const mb_costas_settings *settings, mb_costas **out);

@@ -149,10 +149,10 @@ MB_API double mb_recording_baseband_rate_hz(const mb_recording *recording);
 /** Delay of the derotated baseband and of the track against the input, s. Thread: any. */
 MB_API double mb_recording_baseband_delay_s(const mb_recording *recording);
 /** Track after resolve; time_s counts from the first sample of the input, carrier_offset_hz from its centre.
- */
+ * Thread: control. */
 MB_API size_t mb_recording_point_count(const mb_recording *recording);
 MB_API mb_track_point mb_recording_point(const mb_recording *recording, size_t index);
-/** Summary after resolve; mean offset over active speech. */
+/** Summary after resolve; mean offset over active speech. Thread: control. */
 MB_API mb_receive_state mb_recording_state(const mb_recording *recording);
 /** Accepts NULL. Thread: control. */
 MB_API void mb_recording_destroy(mb_recording *recording);

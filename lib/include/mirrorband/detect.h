@@ -59,6 +59,7 @@ typedef struct mb_gain_control_settings {
 
 typedef struct mb_gain_control mb_gain_control;
 
+/** Usual settings. Thread: any. */
 MB_API mb_gain_control_settings mb_gain_control_settings_default(void);
 /** Errors: ARGUMENT with the field, MEMORY. Thread: control. */
 MB_API mb_status mb_gain_control_create(const mb_gain_control_settings *settings, mb_gain_control **out);
@@ -66,7 +67,7 @@ MB_API mb_status mb_gain_control_create(const mb_gain_control_settings *settings
 MB_API void mb_gain_control_process(mb_gain_control *control, const float *in, size_t n, float *out);
 /** While held (the voice pauses) the gain does not rise. Thread: stream. */
 MB_API void mb_gain_control_hold(mb_gain_control *control, bool hold);
-/** Gain now, dB. Thread: same as process. */
+/** Gain now, dB; back to the start. Thread: stream. */
 MB_API double mb_gain_control_gain_db(const mb_gain_control *control);
 MB_API void mb_gain_control_reset(mb_gain_control *control);
 /** Accepts NULL. Thread: control. */
@@ -85,6 +86,7 @@ typedef struct mb_squelch_settings {
 
 typedef struct mb_squelch mb_squelch;
 
+/** Usual settings. Thread: any. */
 MB_API mb_squelch_settings mb_squelch_settings_default(void);
 /** Errors: ARGUMENT with the field, MEMORY. Thread: control. */
 MB_API mb_status mb_squelch_create(const mb_squelch_settings *settings, mb_squelch **out);
