@@ -19,7 +19,10 @@ struct mb_fir {
 mb_status mb_fir_create(const mb_fir_settings *settings, mb_fir **out)
 {
     *out = NULL;
-    if (settings->taps == NULL || settings->tap_count < 1 || settings->tap_count > (size_t)1 << 20) {
+    if (settings->taps == NULL) {
+        return mb_fail(MB_ERROR_ARGUMENT, "taps", "taps must point to tap_count numbers");
+    }
+    if (settings->tap_count < 1 || settings->tap_count > (size_t)1 << 20) {
         return mb_fail(MB_ERROR_ARGUMENT, "tap_count", "tap_count must be between 1 and 1048576; it is %zu",
                        settings->tap_count);
     }
