@@ -14,7 +14,7 @@ def room_of(path):
     """Room of a source or of a public header; None for the programs."""
     parts = path.split(os.sep)
     if parts[:3] == ["lib", "include", "mirrorband"]:
-        return os.path.splitext(parts[3])[0]
+        return tree.room_of_header(os.path.splitext(parts[3])[0])
     return parts[1] if parts[0] == "lib" else None
 
 
@@ -34,10 +34,13 @@ def fault_of(path, include):
     room, public = room_of(path), PUBLIC.match(include)
     if public is None:
         return None if inside(path, include) else "an internal header of another room, or none at all"
-    if public.group(1) not in ORDER:
-        return "no room of this name"
-    if room is not None and ORDER.index(public.group(1)) > ORDER.index(room):
-        return f"room {room} lies below room {public.group(1)}"
+    other = tree.room_of_header(public.group(1))
+    if other is None:
+        return "no such public header"
+    if room is not None and room not in ORDER:
+        return f"room {room} is missing in lib/CMakeLists.txt"
+    if room is not None and ORDER.index(other) > ORDER.index(room):
+        return f"room {room} lies below room {other}"
     return None
 
 

@@ -44,6 +44,19 @@ def rooms():
     return match.group(1).split()
 
 
+def room_of_header(name):
+    """Room that public header mirrorband/NAME.h belongs to: the one of its name, else (a room may have several)
+    the highest of those whose headers it includes. None if there is no such header."""
+    path = f"lib/include/mirrorband/{name}.h"
+    order = rooms()
+    if not os.path.exists(os.path.join(ROOT, path)):
+        return None
+    if name in order:
+        return name
+    below = re.findall(r'#include "mirrorband/(\w+)\.h"', read(path))
+    return max((room_of_header(other) for other in below if other != name), key=order.index, default=order[0])
+
+
 def finish(faults, checked):
     """Ends the test: says every fault, or how much was looked at. Nothing looked at is a failure too."""
     for fault in faults:
