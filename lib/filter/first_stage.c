@@ -104,6 +104,16 @@ static double gain(const double *taps, size_t span, double angle)
     return sum;
 }
 
+/* Largest modulus of a 16-bit tap. A lane sums `terms` products of full-scale samples in 32 bits, each at
+ * most 2^15 sqrt(2) times the modulus: short filters may have larger taps than MB_SHORT_TAP, which means less
+ * rounding. */
+static double largest_short_tap(size_t padded)
+{
+    size_t terms = (padded < MB_SHORT_SEGMENT ? padded : MB_SHORT_SEGMENT) / MB_SHORT_LANES;
+
+    return fmin(32766.0, 46339.0 / (double)terms - 1.0);
+}
+
 /* Rotates the prototype to the frequency of `step`; the newest sample is the last of the taps. */
 static void fill_taps(mb_first_stage *stage, const double *prototype, uint64_t step)
 {
@@ -112,7 +122,7 @@ static void fill_taps(mb_first_stage *stage, const double *prototype, uint64_t s
     for (size_t n = 0; n < stage->span; n++) {
         most = fmax(most, fabs(prototype[n]));
     }
-    double short_gain = MB_SHORT_TAP / most;
+    double short_gain = largest_short_tap(stage->padded) / most;
     stage->short_scale = (float)(1.0 / (32768.0 * short_gain));
     for (size_t n = 0; n < stage->span; n++) {
         double angle = 2.0 * MB_PI * 0x1.0p-64 * (double)(int64_t)(step * n);

@@ -12,7 +12,7 @@ enum {
     MB_LANES = 16,         /* partial sums of a float kernel; lengths of taps are multiples of it */
     MB_SHORT_LANES = 8,    /* complex samples that a 16-bit kernel takes at a time */
     MB_SHORT_SEGMENT = 64, /* samples summed in 32 bits before they are added as float */
-    MB_SHORT_TAP = 5790    /* largest modulus of a tap: a segment of full scale then stays below 2^31 */
+    MB_SHORT_TAP = 5790    /* tap modulus at which a whole segment of full scale stays below 2^31 */
 };
 
 typedef struct mb_kernels {
