@@ -32,6 +32,31 @@ void app_note(const app_program *program, const app_common *common, const char *
     }
 }
 
+static struct {
+    const app_program *program;
+    const app_common *common;
+} speaker;
+
+static void say_warning(void *user, mb_log_level level, const char *line)
+{
+    (void)user;
+    if (level == MB_LOG_WARNING) {
+        app_note(speaker.program, speaker.common, "%s", line);
+    }
+}
+
+void app_log_begin(const app_program *program, const app_common *common)
+{
+    speaker.program = program;
+    speaker.common = common;
+    mb_log_set(say_warning, NULL);
+}
+
+void app_log_end(void)
+{
+    mb_log_set(NULL, NULL);
+}
+
 int app_usage_error(const app_program *program, const char *format, ...)
 {
     va_list arguments;

@@ -231,11 +231,16 @@ int app_parse(const app_program *program, int argc, char **argv, app_common *com
         return list_keys(&line);
     }
     status = check_endpoints(&line);
-    return status == APP_CONTINUE ? read_config(&line, argc, argv) : status;
+    status = status == APP_CONTINUE ? read_config(&line, argc, argv) : status;
+    if (status == APP_CONTINUE) {
+        app_log_begin(program, common);
+    }
+    return status;
 }
 
 void app_finish(app_common *common)
 {
+    app_log_end();
     mb_config_destroy(common->config);
     common->config = NULL;
 }

@@ -96,6 +96,10 @@ void app_error(const app_program *program, const char *format, ...) __attribute_
 void app_note(const app_program *program, const app_common *common, const char *format, ...)
     __attribute__((format(printf, 3, 4)));
 
+/** From now on what the library warns of is said like a remark; app_parse and app_finish call these. */
+void app_log_begin(const app_program *program, const app_common *common);
+void app_log_end(void);
+
 /** Usage error: as app_error, then where help is. Returns APP_USAGE. */
 int app_usage_error(const app_program *program, const char *format, ...)
     __attribute__((format(printf, 2, 3)));

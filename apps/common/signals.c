@@ -23,6 +23,7 @@ void app_signals_install(void)
     action.sa_handler = SIG_IGN;
     action.sa_flags = 0;
     (void)sigaction(SIGPIPE, &action, NULL);
+    (void)sigaction(SIGXFSZ, &action, NULL);
     stop_signal = 0;
 }
 
