@@ -156,6 +156,17 @@ static mb_status design(mb_first_stage *stage, const mb_decimator_settings *sett
     return MB_OK;
 }
 
+static bool allocate(mb_first_stage *stage)
+{
+    stage->taps_re = mb_allocate(2 * stage->padded, sizeof *stage->taps_re);
+    stage->taps_im = mb_allocate(2 * stage->padded, sizeof *stage->taps_im);
+    stage->short_taps_re = mb_allocate(stage->padded, sizeof *stage->short_taps_re);
+    stage->short_taps_im = mb_allocate(stage->padded, sizeof *stage->short_taps_im);
+    stage->past = mb_allocate(stage->padded + CHUNK, sizeof *stage->past);
+    return stage->taps_re != NULL && stage->taps_im != NULL && stage->short_taps_re != NULL &&
+           stage->short_taps_im != NULL && stage->past != NULL;
+}
+
 mb_status mb_first_stage_create(const mb_decimator_settings *settings, size_t factor, mb_first_stage **out)
 {
     mb_first_stage *stage = mb_allocate(1, sizeof *stage);
@@ -168,17 +179,8 @@ mb_status mb_first_stage_create(const mb_decimator_settings *settings, size_t fa
     stage->factor = factor;
     stage->span = BOXES * (factor - 1) + 1;
     stage->padded = (stage->span + GRAIN - 1) / GRAIN * GRAIN;
-    stage->taps_re = mb_allocate(2 * stage->padded, sizeof *stage->taps_re);
-    stage->taps_im = mb_allocate(2 * stage->padded, sizeof *stage->taps_im);
-    stage->short_taps_re = mb_allocate(stage->padded, sizeof *stage->short_taps_re);
-    stage->short_taps_im = mb_allocate(stage->padded, sizeof *stage->short_taps_im);
-    stage->past = mb_allocate(stage->padded + CHUNK, sizeof *stage->past);
-    mb_status status = MB_OK;
-    if (stage->taps_re == NULL || stage->taps_im == NULL || stage->short_taps_re == NULL ||
-        stage->short_taps_im == NULL || stage->past == NULL) {
-        status = mb_fail(MB_ERROR_MEMORY, "", "no memory for a decimator of %zu taps", stage->span);
-    }
-    status = status == MB_OK ? design(stage, settings) : status;
+    mb_status status = allocate(stage) ? design(stage, settings)
+                                       : mb_fail(MB_ERROR_MEMORY, "", "no memory for %zu taps", stage->span);
     if (status != MB_OK) {
         mb_first_stage_destroy(stage);
         return status;

@@ -43,6 +43,9 @@ mb_status mb_resampler_make(const mb_resampler_plan *plan, mb_resampler **out)
     uint64_t divisor = common_divisor(plan->in, plan->out);
 
     *out = NULL;
+    if (plan->in == 0 || plan->out == 0) {
+        return mb_fail(MB_ERROR_ARGUMENT, "rate_out_hz", "a rate must be above 0 Hz");
+    }
     reduced.in /= divisor;
     reduced.out /= divisor;
     mb_resampler *made = mb_allocate(1, sizeof *made);

@@ -5,7 +5,7 @@
 #include "design.h"
 #include "kernels/kernels.h"
 
-enum { EXACT_FLOATS = 1 << 17, MOST_FLOATS = 1 << 24, MOST_SPAN = 1 << 20 };
+enum { EXACT_FLOATS = 1 << 17, MOST_FLOATS = 1 << 24, MOST_HALF = 1 << 19 };
 
 /* What the response is made of: a windowed ideal filter. */
 typedef struct prototype {
@@ -74,7 +74,7 @@ mb_status mb_phase_table_make(const mb_resampler_plan *plan, mb_phase_table *tab
                    half};
 
     *table = (mb_phase_table){.taps = NULL};
-    if (!(half >= 1.0 && half <= MOST_SPAN / 2)) {
+    if (!(half >= 1.0 && half <= MOST_HALF)) {
         return mb_fail(
             MB_ERROR_ARGUMENT, "passband_hz",
             "passband_hz %g is too near half the lower rate, or the rates %g and %g Hz are too far apart",
