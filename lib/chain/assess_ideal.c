@@ -1,4 +1,5 @@
-/* Ideal detection of wideband samples: turned to the mean offset, decimated, detected with the true phase. */
+/* Ideal detection of wideband samples: turned to the mean offset, decimated, detected with the true phase,
+ * and taken through the audio filter of a receiver, so that the two differ in their phase alone. */
 #include "mirrorband/assess.h"
 
 #include <math.h>
@@ -8,7 +9,7 @@
 
 static const double audio_rate_hz = 16000.0, signal_half_hz = 3000.0;
 
-enum { IDEAL_CHUNK = 8192 };
+enum { IDEAL_CHUNK = 8192, BAND_PART = 256 };
 
 struct mb_assess_ideal {
     mb_assess_ideal_settings settings;
@@ -16,8 +17,9 @@ struct mb_assess_ideal {
     mb_oscillator to_middle;
     mb_decimator *front;
     mb_ideal *detector;
-    mb_cf32 *moved;   /* a chunk turned to the mean offset */
-    mb_cf32 *waiting; /* baseband not yet detected */
+    mb_coherent *band; /* its audio filter */
+    mb_cf32 *moved;    /* a chunk turned to the mean offset */
+    mb_cf32 *waiting;  /* baseband not yet detected */
     size_t fill, room, chunk_bound;
     double delay_s; /* of the baseband */
     size_t drop_at_start, drop;
@@ -26,7 +28,20 @@ struct mb_assess_ideal {
 
 mb_assess_ideal_settings mb_assess_ideal_settings_default(void)
 {
-    return (mb_assess_ideal_settings){.rate_hz = 48000.0, .offset_hz = 0.0};
+    mb_coherent_settings receiver = mb_coherent_settings_default();
+
+    return (mb_assess_ideal_settings){
+        .rate_hz = 48000.0, .offset_hz = 0.0, .low_hz = receiver.low_hz, .high_hz = receiver.high_hz};
+}
+
+static mb_status create_band(mb_assess_ideal *ideal)
+{
+    mb_coherent_settings band = mb_coherent_settings_default();
+
+    band.rate_hz = ideal->rate_hz;
+    band.low_hz = ideal->settings.low_hz;
+    band.high_hz = ideal->settings.high_hz;
+    return mb_coherent_create(&band, &ideal->band);
 }
 
 static mb_status create_parts(mb_assess_ideal *ideal)
@@ -43,7 +58,8 @@ static mb_status create_parts(mb_assess_ideal *ideal)
         return status;
     }
     detector.rate_hz = ideal->rate_hz;
-    if ((status = mb_ideal_create(&detector, &ideal->detector)) != MB_OK) {
+    if ((status = mb_ideal_create(&detector, &ideal->detector)) != MB_OK ||
+        (status = create_band(ideal)) != MB_OK) {
         return status;
     }
     ideal->chunk_bound = mb_decimator_output_bound(ideal->front, IDEAL_CHUNK);
@@ -54,7 +70,8 @@ static mb_status create_parts(mb_assess_ideal *ideal)
         return mb_fail(MB_ERROR_MEMORY, "", "no memory for ideal detection");
     }
     ideal->delay_s = mb_decimator_delay_s(ideal->front);
-    ideal->drop_at_start = (size_t)lround(ideal->delay_s * ideal->rate_hz);
+    ideal->drop_at_start =
+        (size_t)lround(ideal->delay_s * ideal->rate_hz) + mb_coherent_delay_samples(ideal->band);
     return MB_OK;
 }
 
@@ -89,6 +106,7 @@ void mb_assess_ideal_destroy(mb_assess_ideal *ideal)
     if (ideal != NULL) {
         mb_decimator_destroy(ideal->front);
         mb_ideal_destroy(ideal->detector);
+        mb_coherent_destroy(ideal->band);
         mb_release(ideal->moved);
         mb_release(ideal->waiting);
         mb_release(ideal);
@@ -101,6 +119,7 @@ void mb_assess_ideal_reset(mb_assess_ideal *ideal)
     mb_oscillator_set(&ideal->to_middle, -ideal->settings.offset_hz, ideal->settings.rate_hz);
     mb_decimator_reset(ideal->front);
     mb_ideal_reset(ideal->detector);
+    mb_coherent_reset(ideal->band);
     ideal->fill = 0;
     ideal->drop = ideal->drop_at_start;
     ideal->taken = ideal->made = 0;
@@ -136,11 +155,27 @@ void mb_assess_ideal_truth_end(mb_assess_ideal *ideal)
     mb_ideal_track_end(ideal->detector);
 }
 
+/* The audio filter; in place. */
+static void limit_band(mb_assess_ideal *ideal, float *audio, size_t count)
+{
+    mb_cf32 part[BAND_PART];
+
+    for (size_t done = 0; done < count;) {
+        size_t run = count - done < BAND_PART ? count - done : BAND_PART;
+        for (size_t i = 0; i < run; i++) {
+            part[i] = (mb_cf32){audio[done + i], 0.0f};
+        }
+        mb_coherent_process(ideal->band, part, run, audio + done);
+        done += run;
+    }
+}
+
 /* Detects what waits, as far as the truth reaches. */
 static size_t detect(mb_assess_ideal *ideal, float *out)
 {
     size_t made = mb_ideal_process(ideal->detector, ideal->waiting, ideal->fill, out);
 
+    limit_band(ideal, out, made);
     ideal->fill -= made;
     memmove(ideal->waiting, ideal->waiting + made, ideal->fill * sizeof *ideal->waiting);
     size_t drop = ideal->drop < made ? ideal->drop : made;

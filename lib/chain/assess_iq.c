@@ -103,8 +103,7 @@ static mb_status follow_carrier(mb_assess_iq *assess)
 {
     const mb_receive_settings *receive = &assess->settings.receive;
 
-    assess->carrier_hz = mb_recording_state(assess->recording).carrier.carrier_offset_hz;
-    assess->drift_hz_per_s = track_drift_hz_per_s(assess->recording);
+    track_mean(assess->recording, &assess->carrier_hz, &assess->drift_hz_per_s);
     assess->turner =
         track_turner_begin(assess->recording, receive->rate_hz, receive->offset_hz, assess->carrier_hz);
     assess->judge = (truth_judge){.recording = assess->recording};

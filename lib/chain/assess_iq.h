@@ -23,8 +23,9 @@ track_turner track_turner_begin(const mb_recording *recording, double rate_hz, d
 /** n samples turned; in may be out. */
 void track_turner_process(track_turner *turner, const mb_cf32 *in, size_t n, mb_cf32 *out);
 
-/** Least-squares slope of the offset over the points with voice, Hz/s; 0 with fewer than two. */
-double track_drift_hz_per_s(const mb_recording *recording);
+/** Mean offset over the points with voice, and its least-squares slope; the summary of the recording and 0
+ * without such points. */
+void track_mean(const mb_recording *recording, double *offset_hz, double *drift_hz_per_s);
 
 /** Share of the time with speech: ITU-T P.56 on the envelope less its noise. Errors: MEMORY. */
 mb_status track_activity(const mb_recording *recording, double *activity);

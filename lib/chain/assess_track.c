@@ -48,7 +48,7 @@ static bool has_voice(const mb_track_point *point)
     return point->mode == MB_CARRIER_LOCKED;
 }
 
-double track_drift_hz_per_s(const mb_recording *recording)
+void track_mean(const mb_recording *recording, double *offset_hz, double *drift_hz_per_s)
 {
     size_t points = mb_recording_point_count(recording);
     double count = 0.0, mean_s = 0.0, mean_hz = 0.0, square = 0.0, product = 0.0;
@@ -64,7 +64,8 @@ double track_drift_hz_per_s(const mb_recording *recording)
             product += from_s * (point.carrier_offset_hz - mean_hz);
         }
     }
-    return square > 0.0 ? product / square : 0.0;
+    *offset_hz = count > 0.0 ? mean_hz : mb_recording_state(recording).carrier.carrier_offset_hz;
+    *drift_hz_per_s = square > 0.0 ? product / square : 0.0;
 }
 
 /* Both arms hold half of the noise each, so their difference is the power of the message alone; where it

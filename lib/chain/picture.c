@@ -8,7 +8,7 @@
 
 enum { SPECTRUM_POINTS = 200, NOTE = 160 };
 
-static const double panel_width_px = 480.0, panel_height_px = 330.0, depth_db = 70.0;
+static const double panel_width_px = 480.0, panel_height_px = 330.0, deepest_db = 110.0, least_db = 40.0;
 
 /* Power of the fine spectrum from low_hz to high_hz; whole bins, at least one. */
 static double power_between(const mb_spectrum_info *info, const double *power, double low_hz, double high_hz)
@@ -27,7 +27,7 @@ static double power_between(const mb_spectrum_info *info, const double *power, d
 /* One side of the spectrum, counted away from the carrier, in dB of all that lies on both sides. */
 typedef struct sidebands {
     double frequency_hz[SPECTRUM_POINTS], upper_db[SPECTRUM_POINTS], lower_db[SPECTRUM_POINTS];
-    double step_hz, highest_db;
+    double step_hz, highest_db, lowest_db;
 } sidebands;
 
 static mb_status fill_sidebands(const mb_assess_iq *assess, sidebands *out)
@@ -41,6 +41,7 @@ static mb_status fill_sidebands(const mb_assess_iq *assess, sidebands *out)
 
     out->step_hz = half_hz / SPECTRUM_POINTS;
     out->highest_db = -400.0;
+    out->lowest_db = 0.0;
     if (status == MB_OK) {
         double whole = fmax(power_between(&info, power, -half_hz, half_hz), 1e-30);
         for (size_t i = 0; i < SPECTRUM_POINTS; i++) {
@@ -49,6 +50,7 @@ static mb_status fill_sidebands(const mb_assess_iq *assess, sidebands *out)
             out->upper_db[i] = mb_power_db(power_between(&info, power, from_hz, to_hz) / whole);
             out->lower_db[i] = mb_power_db(power_between(&info, power, -to_hz, -from_hz) / whole);
             out->highest_db = fmax(out->highest_db, fmax(out->upper_db[i], out->lower_db[i]));
+            out->lowest_db = fmin(out->lowest_db, fmin(out->upper_db[i], out->lower_db[i]));
         }
     }
     mb_release(power);
@@ -81,6 +83,7 @@ static mb_status draw_sidebands(mb_plot *plot, const mb_assess_iq *assess, const
         return status;
     }
     double top_db = 10.0 * ceil(work->highest_db / 10.0);
+    double bottom_db = 10.0 * floor(work->lowest_db / 10.0);
     (void)snprintf(label, sizeof label, "power in %g Hz, of the whole", work->step_hz);
     panel.title = "Upper sideband and mirrored lower sideband";
     panel.column_span = assess->found ? 2 : 1;
@@ -88,7 +91,10 @@ static mb_status draw_sidebands(mb_plot *plot, const mb_assess_iq *assess, const
                              .unit = "Hz",
                              .low = 0.0,
                              .high = assess->half_width_hz};
-    panel.y = (mb_plot_axis){.label = label, .unit = "dB", .low = top_db - depth_db, .high = top_db};
+    panel.y = (mb_plot_axis){.label = label,
+                             .unit = "dB",
+                             .low = fmin(fmax(bottom_db, top_db - deepest_db), top_db - least_db),
+                             .high = top_db};
     if (!assess->found) {
         panel.title = "Both sides of where the carrier was looked for";
         panel.x.label = "distance from there";
@@ -138,7 +144,7 @@ static mb_status draw_phase_line(mb_plot *plot, const scatter *s, const mb_asses
     dots.style = MB_PLOT_POINTS;
     dots.colour = 0;
     dots.width_px = 2.4;
-    dots.opacity = 0.45;
+    dots.opacity = 0.6;
     dots.x = s->in_phase;
     dots.y = s->quadrature;
     dots.count = s->count;

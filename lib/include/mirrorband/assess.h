@@ -133,12 +133,14 @@ MB_API void mb_assess_audio_destroy(mb_assess_audio *assess);
 typedef struct mb_assess_ideal_settings {
     double rate_hz;   /* of the samples, 12 kHz to 25 MHz */
     double offset_hz; /* mean offset of the carrier by the truth, +- half the rate less 3 kHz */
+    double low_hz;    /* audio kept flat, as of the receiver it is the yardstick of; default 250 */
+    double high_hz;   /* default 2750 */
 } mb_assess_ideal_settings;
 
 /** IQ samples of any rate and the true carrier phase in, audio as an ideal receiver makes it out. */
 typedef struct mb_assess_ideal mb_assess_ideal;
 
-/** 48 kHz, 0 Hz. Thread: any. */
+/** 48 kHz, 0 Hz, the audio band of reception. Thread: any. */
 MB_API mb_assess_ideal_settings mb_assess_ideal_settings_default(void);
 /** Errors: ARGUMENT with the field, MEMORY. Thread: control. */
 MB_API mb_status mb_assess_ideal_create(const mb_assess_ideal_settings *settings, mb_assess_ideal **out);
