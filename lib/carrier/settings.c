@@ -15,7 +15,7 @@ mb_recovery_settings mb_recovery_settings_default(void)
         .tracker = MB_TRACKER_KALMAN,
         .loop_bandwidth_hz = 5.0,
         .damping = 0.7071,
-        .noise = {0.003, (turn * 0.02) * (turn * 0.02), (turn * 0.01) * (turn * 0.01)},
+        .noise = {0.003, (turn * 0.01) * (turn * 0.01), (turn * 0.004) * (turn * 0.004)},
         .drift_sigma_hz_s = 0.15,
     };
 }

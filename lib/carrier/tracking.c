@@ -2,7 +2,7 @@
 
 #include <math.h>
 
-#define GATE            1.5  /* times the noise energy of one arm that a block must mirror to be used */
+#define FALSE_UPDATE    1e-7 /* share of blocks of noise alone that pass for voice */
 #define NOISE_BLOCKS    50.0 /* averaging of the noise level */
 #define QUALITY_BLOCKS  30.0 /* averaging of quality and SNR, active blocks */
 #define SURPRISE_BLOCKS 8.0
@@ -45,6 +45,16 @@ double tracking_quality(const follower *f)
     double both = f->active_i + f->active_q;
 
     return both > 0.0 ? fmax((f->active_i - f->active_q) / both, 0.0) : 0.0;
+}
+
+/* Energy that a block must mirror to be used, in units of the noise energy of one arm. The sum of squares of
+ * noise has the mean square 8 s^2 per independent sample (s: power of an arm), so its magnitude exceeds g
+ * with probability exp(-g^2 N / 8), N independent samples in the block. */
+static double gate(const follower *f)
+{
+    double samples = (double)f->block * f->meter.noise_bandwidth_hz / f->settings.rate_hz;
+
+    return sqrt(8.0 / samples * log(1.0 / FALSE_UPDATE));
 }
 
 /* Variance of half the angle of a sum of squares: signal times noise and noise times noise, over the
@@ -110,7 +120,7 @@ void tracking_block(follower *f, const mb_cf32 *samples, knot *out)
     double mirrored = hypot(reading.square_re, reading.square_im);
     double least_noise = 0.35 * (reading.energy - mirrored) / (double)f->block;
     double noise = fmax(f->noise_power, least_noise);
-    bool active = mirrored > GATE * noise * (double)f->block && mirrored > 1e-25;
+    bool active = mirrored > gate(f) * noise * (double)f->block && mirrored > 1e-25;
 
     *out = (knot){.known = true};
     if (active) {
