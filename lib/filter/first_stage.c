@@ -22,15 +22,26 @@ struct mb_first_stage {
     mb_cf32 *past; /* the last padded - 1 samples and a chunk behind them, of either kind */
 };
 
-/* A band of half width B that folds from k r onto 0 leaks at most (B / r)^3 / 4, the monic Chebyshev
- * polynomial of order 3. */
-size_t mb_first_stage_factor(const mb_decimator_settings *settings)
+/* Near k r, r being the rate behind it, a box of D samples has the slope (pi / D) / sin(pi k / D) / r, the
+ * steepest at k = 1; three spread as Chebyshev's nodes leak at most a quarter of (slope B)^3 within B of it.
+ * The rate is kept above 14 B too, where 1 + curvature f^2 levels the passband to 0.01 dB. */
+static bool holds(const mb_decimator_settings *settings, double factor)
 {
     double leak = pow(10.0, -(settings->attenuation_db + 6.0) / 20.0);
-    double least_hz = settings->passband_hz * fmax(14.0, cbrt(0.25 / leak));
+    double steepness = (MB_PI / factor) / sin(MB_PI / factor);
+    double least_hz = settings->passband_hz * fmax(14.0, steepness / cbrt(4.0 * leak));
 
-    least_hz = fmax(least_hz, settings->rate_out_hz);
-    return (size_t)fmax(1.0, floor(settings->rate_in_hz / least_hz));
+    return settings->rate_in_hz / factor >= fmax(least_hz, settings->rate_out_hz);
+}
+
+size_t mb_first_stage_factor(const mb_decimator_settings *settings)
+{
+    double factor = floor(settings->rate_in_hz / settings->rate_out_hz);
+
+    while (factor >= 2.0 && !holds(settings, factor)) {
+        factor -= 1.0;
+    }
+    return (size_t)fmax(1.0, factor);
 }
 
 double mb_first_stage_delay(const mb_first_stage *stage)

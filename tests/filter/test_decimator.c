@@ -143,6 +143,24 @@ static void what_would_fold_into_the_passband_is_gone(void **state)
     }
 }
 
+static void any_rate_and_offset_will_do(void **state)
+{
+    mb_random random;
+
+    (void)state;
+    mb_random_seed(&random, SEED, 1);
+    for (int i = 0; i < 24; i++) {
+        double in_hz = 16000.0 * pow(60.0, mb_random_uniform(&random));
+        double offset_hz = in_hz * (mb_random_uniform(&random) - 0.5);
+        band b = {in_hz, 16000.0, offset_hz, 1600.0 + 4000.0 * mb_random_uniform(&random), 1};
+        double whole_db = worst_fold_db(&b, false), short_db = worst_fold_db(&b, true);
+        if (whole_db > -80.0 || short_db > -80.0) {
+            fail_msg("%g Hz, offset %g Hz, half width %g Hz: cf32 %.1f dB, ci16 %.1f dB", b.in_hz,
+                     b.offset_hz, b.passband_hz, whole_db, short_db);
+        }
+    }
+}
+
 static void live_reception_waits_less_than_6_ms(void **state)
 {
     (void)state;
@@ -260,6 +278,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(the_passband_is_flat_and_on_time),
         cmocka_unit_test(what_would_fold_into_the_passband_is_gone),
+        cmocka_unit_test(any_rate_and_offset_will_do),
         cmocka_unit_test(live_reception_waits_less_than_6_ms),
         cmocka_unit_test(cuts_do_not_matter),
         cmocka_unit_test(what_is_no_number_counts_as_zero),
