@@ -9,6 +9,7 @@ static const char *const words_off[] = {"off", NULL};
 static const char *const words_auto[] = {"auto", NULL};
 static const char *const words_random[] = {"random", NULL};
 static const char *const words_look_ahead[] = {"off", "all", NULL};
+static const char *const words_sideband[] = {"both", "upper", "lower", NULL};
 static const char *const words_tracker[] = {"kalman", "costas", NULL};
 static const char *const words_modulator[] = {"product", "balanced", "diode", "ring", NULL};
 static const char *const words_interferer[] = {"off", "tone", NULL};
@@ -113,6 +114,8 @@ const config_key config_keys[] = {
         .meaning = "lowest audio frequency kept flat"),
     KEY("receive.high_cut", "2750 Hz", QUANTITY(MB_UNIT_HZ, 1000, 6000),
         .meaning = "highest audio frequency kept flat"),
+    KEY("receive.sideband", "both", WORD(words_sideband),
+        .meaning = "both sidebands, or only one where the other is disturbed (3 dB less in noise)"),
     KEY("receive.gain_control", "off", SWITCH,
         .meaning = "hold the audio at receive.level"),
     KEY("receive.squelch", "off", SWITCH,
