@@ -328,26 +328,23 @@ static mb_status prepare(contest *c, bool as_sent, bool ideal)
 
 static void release(contest *c)
 {
-    if (c != NULL) {
-        mb_assess_audio_destroy(c->assess);
-        mb_assess_ideal_destroy(c->ideal);
-        mb_transmit_destroy(c->as_sent);
-        mb_release(c->heard);
-        mb_release(c->sent);
-        mb_release(c->message);
-        mb_release(c);
-    }
+    mb_assess_audio_destroy(c->assess);
+    mb_assess_ideal_destroy(c->ideal);
+    mb_transmit_destroy(c->as_sent);
+    mb_release(c->heard);
+    mb_release(c->sent);
+    mb_release(c->message);
+    mb_release(c);
 }
 
 static mb_status hold_contest(audio_measurement *job, bool as_sent, bool ideal, mb_score_result *result)
 {
     contest *c = mb_allocate(1, sizeof *c);
-    mb_status status = c != NULL ? MB_OK : mb_fail(MB_ERROR_MEMORY, "", "no memory to score audio");
-
-    if (status == MB_OK) {
-        c->job = job;
-        status = prepare(c, as_sent, ideal);
+    if (c == NULL) {
+        return mb_fail(MB_ERROR_MEMORY, "", "no memory to score audio");
     }
+    c->job = job;
+    mb_status status = prepare(c, as_sent, ideal);
     if (status == MB_OK) {
         status = one_pass(c, ideal ? "aligning the ideal" : "aligning");
     }
@@ -382,7 +379,13 @@ static mb_status score_audio(audio_measurement *job)
 mb_status audio_measure(audio_measurement *job)
 {
     mb_status status = measure_level(job);
+    double length_s = (double)job->level.samples / mb_audio_reader_info(job->audio).rate_hz;
 
+    if (status == MB_OK && job->skip_s > 0.0 && job->skip_s >= length_s) {
+        return mb_fail(MB_ERROR_ARGUMENT, "skip",
+                       "--skip %g s leaves nothing of the %.2f s of audio; give a shorter time", job->skip_s,
+                       length_s);
+    }
     if (status == MB_OK && job->message != NULL) {
         status = score_audio(job);
     }

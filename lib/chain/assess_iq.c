@@ -155,9 +155,11 @@ void mb_assess_iq_process(mb_assess_iq *assess, const mb_cf32 *in, size_t n)
 static void keep_truth(void *user, size_t index, double truth_hz)
 {
     mb_assess_iq *assess = user;
-    size_t kept = assess->truth_hz != NULL && index % assess->track_stride == 0 ? index / assess->track_stride
-                                                                                : ASSESS_TRACK;
 
+    if (assess->truth_hz == NULL || index % assess->track_stride != 0) {
+        return;
+    }
+    size_t kept = index / assess->track_stride;
     if (kept < assess->track_count) {
         assess->truth_hz[kept] = truth_hz;
     }

@@ -13,7 +13,7 @@ static const double panel_width_px = 480.0, panel_height_px = 330.0, deepest_db 
 /* Power of the fine spectrum from low_hz to high_hz; whole bins, at least one. */
 static double power_between(const mb_spectrum_info *info, const double *power, double low_hz, double high_hz)
 {
-    double middle = (double)(info->length / 2);
+    double middle = 0.5 * (double)info->length; /* a power of two */
     double from = ceil(low_hz / info->step_hz + middle), to = ceil(high_hz / info->step_hz + middle);
     double sum = 0.0;
 
@@ -259,8 +259,10 @@ mb_status mb_assess_picture(const mb_assess_iq *assess, const mb_assess_iq_resul
     settings.panel_width_px = assess->found ? panel_width_px : 2.0 * panel_width_px;
     settings.panel_height_px = panel_height_px;
     picture_work *work = mb_allocate(1, sizeof *work);
-    mb_status status = work != NULL ? mb_plot_create(&settings, &plot)
-                                    : mb_fail(MB_ERROR_MEMORY, "", "no memory for the picture");
+    if (work == NULL) {
+        return mb_fail(MB_ERROR_MEMORY, "", "no memory for the picture");
+    }
+    mb_status status = mb_plot_create(&settings, &plot);
     if (status == MB_OK) {
         status = draw(plot, assess, result, work);
     }

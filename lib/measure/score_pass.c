@@ -140,8 +140,8 @@ void mb_score_take(mb_score *score, const float *message, const float *audio, si
     while (count > 0) {
         size_t part = count < MB_SCORE_CHUNK ? count : MB_SCORE_CHUNK;
         take_chunk(score, message, audio, part);
-        message += message != NULL ? part : 0;
-        audio += audio != NULL ? part : 0;
+        message = message != NULL ? message + part : NULL;
+        audio = audio != NULL ? audio + part : NULL;
         count -= part;
     }
 }

@@ -62,7 +62,7 @@ static float *heard(const float *message, size_t count, size_t delay, double gai
 static void snr_and_delay_are_found_across_rates(void **state)
 {
     (void)state;
-    const size_t count = SECONDS * 16000;
+    const size_t count = (size_t)SECONDS * 16000;
     float *message = speech_like(16000.0, count, 21);
     float *audio = heard(message, count, 800, -0.5, 0.01, 22);
     lanes from = {message, audio, count, count, 1000};
@@ -81,7 +81,7 @@ static void snr_and_delay_are_found_across_rates(void **state)
 static void any_pair_of_rates_will_do(void **state)
 {
     (void)state;
-    const size_t count = SECONDS * 16000;
+    const size_t count = (size_t)SECONDS * 16000;
     float *audio = speech_like(16000.0, count, 23);
     mb_resampler_settings up = mb_resampler_settings_default();
     mb_resampler *resampler = NULL;
@@ -104,7 +104,7 @@ static void any_pair_of_rates_will_do(void **state)
 static void a_turn_of_polarity_is_counted(void **state)
 {
     (void)state;
-    const size_t count = SECONDS * 16000;
+    const size_t count = (size_t)SECONDS * 16000;
     float *message = speech_like(16000.0, count, 24), *audio = heard(message, count, 0, 1.0, 0.001, 25);
 
     for (size_t i = 3 * count / 4; i < count; i++) { /* half-way, nothing would be left to align by */
@@ -123,7 +123,7 @@ static void a_turn_of_polarity_is_counted(void **state)
 static void lengths_may_differ_and_blocks_do_not_matter(void **state)
 {
     (void)state;
-    const size_t count = SECONDS * 16000;
+    const size_t count = (size_t)SECONDS * 16000;
     float *message = speech_like(16000.0, count, 26), *audio = heard(message, count, 0, 1.0, 0.002, 27);
     const size_t blocks[] = {8000, 1000, 77};
     mb_score_result r[3];
@@ -216,7 +216,7 @@ static void ideal_detection_uses_the_very_phase(void **state)
                           .phase_rad = 0.7,
                           .leak_dbc = -INFINITY,
                           .noise_db = -INFINITY};
-    const size_t count = 4 * 240000;
+    const size_t count = (size_t)4 * 240000;
     float *message = speech_like(plan.rate_hz, count, 31);
     mb_cf32 *air = on_air(&plan, message, count, 32);
     float *wanted = mb_allocate(count / 15, sizeof *wanted);

@@ -1,7 +1,7 @@
 /* Assessment of IQ samples: figures known from how the signal was made. */
 #include "assess_signals.h"
 
-enum { RATE = 48000, COUNT = 9 * RATE };
+enum { RATE = 48000, COUNT = 9 * RATE, SHORT = 4 * RATE };
 
 static mb_assess_iq_settings settings_at(double rate_hz)
 {
@@ -121,14 +121,14 @@ static void noise_alone_has_power_but_no_carrier(void **state)
     mb_assess_iq *assess = NULL;
     mb_assess_iq_result r;
     mb_random random;
-    mb_cf32 *noise = mb_allocate(4 * RATE, sizeof *noise);
+    mb_cf32 *noise = mb_allocate(SHORT, sizeof *noise);
 
     mb_random_seed(&random, 3, 0);
-    for (size_t i = 0; i < 4 * RATE; i++) {
+    for (size_t i = 0; i < SHORT; i++) {
         noise[i] =
             (mb_cf32){(float)(0.1 * mb_random_normal(&random)), (float)(0.1 * mb_random_normal(&random))};
     }
-    assert_int_equal(assess_in_blocks(&settings, noise, 4 * RATE, 4800, &assess), MB_ERROR_NO_SIGNAL);
+    assert_int_equal(assess_in_blocks(&settings, noise, SHORT, 4800, &assess), MB_ERROR_NO_SIGNAL);
     mb_assess_iq_truth(assess, 0.0, 1.0); /* there is nothing to hold it against */
     assert_ok(mb_assess_iq_finish(assess, &r));
     assert_false(r.found || r.has_truth);
@@ -146,16 +146,16 @@ static void two_tones_show_their_products(void **state)
     mb_assess_iq *assess = NULL;
     mb_assess_iq_result r;
     const double k = 0.01, a = 0.25;
-    mb_cf32 *air = mb_allocate(4 * RATE, sizeof *air);
+    mb_cf32 *air = mb_allocate(SHORT, sizeof *air);
 
     settings.tone_low_hz = 700.0;
     settings.tone_high_hz = 1900.0;
-    for (size_t i = 0; i < 4 * RATE; i++) {
+    for (size_t i = 0; i < SHORT; i++) {
         double t = (double)i / RATE, m = a * (cos(2.0 * MB_PI * 700.0 * t) + cos(2.0 * MB_PI * 1900.0 * t));
         double phase = 2.0 * MB_PI * 55.5 * t, x = m + k * m * m * m;
         air[i] = (mb_cf32){(float)(x * cos(phase)), (float)(x * sin(phase))};
     }
-    assert_ok(assess_in_blocks(&settings, air, 4 * RATE, 9600, &assess));
+    assert_ok(assess_in_blocks(&settings, air, SHORT, 9600, &assess));
     assert_ok(mb_assess_iq_finish(assess, &r));
     assert_true(r.has_two_tone);
     assert_near(r.two_tone.third_order_db, 2.0 * mb_power_db(0.75 * k * a * a), 0.2);
@@ -169,7 +169,7 @@ static void figures_do_not_depend_on_the_blocks(void **state)
     (void)state;
     emission_plan plan = {
         .rate_hz = RATE, .offset_hz = 137.0, .drift_hz_per_s = 0.5, .leak_dbc = -40.0, .noise_db = -20.0};
-    const size_t count = 4 * RATE, blocks[] = {4 * RATE, 1000, 7};
+    const size_t count = SHORT, blocks[] = {SHORT, 1000, 7};
     float *message = speech_like(RATE, count, 15);
     mb_cf32 *air = on_air(&plan, message, count, 5);
     mb_assess_iq_settings settings = settings_at(RATE);
