@@ -34,6 +34,7 @@ int main(void)
     struct rusage usage;
 
     bench_decimate();
+    bench_receive();
     if (getrusage(RUSAGE_SELF, &usage) == 0) {
         printf("peak memory %.1f MiB\n", (double)usage.ru_maxrss / 1024.0);
     }

@@ -4,6 +4,7 @@
 
 /** Each measures one thing and prints its lines. */
 void bench_decimate(void);
+void bench_receive(void);
 
 /** Median of `count` values, at most 64; their order is changed. */
 double bench_median(double *values, int count);
