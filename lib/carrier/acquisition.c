@@ -84,8 +84,5 @@ bool acquisition_look(acquisition *a, const mb_cf32 *end, mb_sighting *found, si
 
 mb_sighting acquisition_check(acquisition *a, const mb_cf32 *end, double offset_hz, mb_sighting *elsewhere)
 {
-    const mb_cf32 *samples = end - mb_sighter_length(a->lasting);
-
-    *elsewhere = mb_sighter_look(a->lasting, samples);
-    return mb_sighter_look_at(a->lasting, samples, offset_hz);
+    return mb_sighter_look_at(a->lasting, end - mb_sighter_length(a->lasting), offset_hz, elsewhere);
 }

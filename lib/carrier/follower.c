@@ -10,11 +10,11 @@
 
 enum {
     SEARCH_EVERY = 2,    /* blocks between looks while searching */
-    CHECK_EVERY = 20,    /* blocks between checks of a lock */
+    CHECK_EVERY = 40,    /* blocks between checks of a lock */
     CHECK_NEW_EVERY = 8, /* of one that no check has confirmed yet */
-    DOUBTS_TO_LOSE = 5,
+    DOUBTS_TO_LOSE = 3,
     DOUBTS_TO_LOSE_NEW = 2,
-    RIVALS_TO_MOVE = 4
+    RIVALS_TO_MOVE = 3
 };
 
 static size_t history_samples(const follower *f)

@@ -304,12 +304,18 @@ mb_sighting mb_sighter_look(mb_sighter *sighter, const mb_cf32 *samples)
     return examine(sighter, samples, energy, 0.5 * highest_line_hz(sighter));
 }
 
-mb_sighting mb_sighter_look_at(mb_sighter *sighter, const mb_cf32 *samples, double offset_hz)
+mb_sighting mb_sighter_look_at(mb_sighter *sighter, const mb_cf32 *samples, double offset_hz,
+                               mb_sighting *elsewhere)
 {
     double energy = transform(sighter, samples);
 
+    *elsewhere = (mb_sighting){.centre_share = 1.0};
     if (!(energy > 1e-30)) {
         return (mb_sighting){.offset_hz = offset_hz, .centre_share = 1.0};
     }
-    return examine(sighter, samples, energy, offset_hz);
+    mb_sighting here = examine(sighter, samples, energy, offset_hz);
+    if (!here.accepted) {
+        *elsewhere = examine(sighter, samples, energy, 0.5 * highest_line_hz(sighter));
+    }
+    return here;
 }

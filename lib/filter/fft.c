@@ -5,8 +5,9 @@
 #include <string.h>
 
 struct mb_fft {
-    fftwf_plan plan;
+    fftwf_plan plan; /* from `from` to `to`, which are aligned for the vector code of FFTW */
     size_t length;
+    mb_cf32 *from, *to;
 };
 
 /* FFTW's planner is the one part of it that must not run in two threads at once. */
@@ -20,18 +21,20 @@ mb_status mb_fft_create(size_t length, bool inverse, mb_fft **out)
                        length);
     }
     mb_fft *fft = mb_allocate(1, sizeof *fft);
-    mb_cf32 *scratch = mb_allocate(length, sizeof *scratch);
-    if (fft != NULL && scratch != NULL) {
-        fftwf_complex *data = (fftwf_complex *)(void *)scratch;
+    if (fft != NULL) {
         fft->length = length;
+        fft->from = mb_allocate(length, sizeof *fft->from);
+        fft->to = mb_allocate(length, sizeof *fft->to);
+    }
+    if (fft != NULL && fft->from != NULL && fft->to != NULL) {
         (void)pthread_mutex_lock(&planner_lock);
-        fft->plan = fftwf_plan_dft_1d((int)length, data, data, inverse ? FFTW_BACKWARD : FFTW_FORWARD,
-                                      FFTW_ESTIMATE | FFTW_UNALIGNED);
+        fft->plan = fftwf_plan_dft_1d((int)length, (fftwf_complex *)(void *)fft->from,
+                                      (fftwf_complex *)(void *)fft->to,
+                                      inverse ? FFTW_BACKWARD : FFTW_FORWARD, FFTW_ESTIMATE);
         (void)pthread_mutex_unlock(&planner_lock);
     }
-    mb_release(scratch);
     if (fft == NULL || fft->plan == NULL) {
-        mb_release(fft);
+        mb_fft_destroy(fft);
         return mb_fail(MB_ERROR_MEMORY, "length", "no memory for a transform of %zu points", length);
     }
     *out = fft;
@@ -40,18 +43,21 @@ mb_status mb_fft_create(size_t length, bool inverse, mb_fft **out)
 
 void mb_fft_process(mb_fft *fft, const mb_cf32 *in, mb_cf32 *out)
 {
-    if (in != out) {
-        memcpy(out, in, fft->length * sizeof *out);
-    }
-    fftwf_execute_dft(fft->plan, (fftwf_complex *)(void *)out, (fftwf_complex *)(void *)out);
+    memcpy(fft->from, in, fft->length * sizeof *in);
+    fftwf_execute(fft->plan);
+    memcpy(out, fft->to, fft->length * sizeof *out);
 }
 
 void mb_fft_destroy(mb_fft *fft)
 {
     if (fft != NULL) {
         (void)pthread_mutex_lock(&planner_lock);
-        fftwf_destroy_plan(fft->plan);
+        if (fft->plan != NULL) {
+            fftwf_destroy_plan(fft->plan);
+        }
         (void)pthread_mutex_unlock(&planner_lock);
+        mb_release(fft->from);
+        mb_release(fft->to);
         mb_release(fft);
     }
 }

@@ -62,8 +62,12 @@ MB_API size_t mb_sighter_length(const mb_sighter *sighter);
  */
 MB_API mb_sighting mb_sighter_look(mb_sighter *sighter, const mb_cf32 *samples);
 
-/** The same tests for a carrier at offset_hz, whatever else there is. Thread: stream. */
-MB_API mb_sighting mb_sighter_look_at(mb_sighter *sighter, const mb_cf32 *samples, double offset_hz);
+/**
+ * The same tests for a carrier at offset_hz, whatever else there is. Where they are not passed, *elsewhere is
+ * the best candidate of the span, as mb_sighter_look finds it; else it is not looked for. Thread: stream.
+ */
+MB_API mb_sighting mb_sighter_look_at(mb_sighter *sighter, const mb_cf32 *samples, double offset_hz,
+                                      mb_sighting *elsewhere);
 
 /** Accepts NULL. Thread: control. */
 MB_API void mb_sighter_destroy(mb_sighter *sighter);
