@@ -6,7 +6,7 @@
 
 enum { BLOCK = 2048 };
 
-static const double sent_rate_hz = 48000.0; /* of the message as conditioned */
+static const double sent_rate_hz = 48000.0; /* of the message as sent */
 
 static mb_status level_block(audio_measurement *job, mb_speech_meter *meter, float *block, size_t *taken)
 {
@@ -150,7 +150,7 @@ static mb_status push_sent(contest *c, size_t count)
     return push(c, MB_ASSESS_MESSAGE, c->message, count);
 }
 
-/* One block of the message as the transmitter conditions it. */
+/* One block of the message as the transmitter sends it. */
 static mb_status feed_sent(contest *c, size_t *taken)
 {
     mb_status status = mb_audio_read(c->job->message, c->block, BLOCK, taken);
@@ -283,14 +283,15 @@ static mb_status create_ideal(contest *c)
     return status;
 }
 
-/* The ideal emission of the message at a rate of its own: its real part is the message as conditioned. */
-static mb_status create_as_sent(contest *c)
+/* The ideal emission of the message at a rate of its own: its real part is the message as sent. */
+static mb_status create_as_sent(contest *c, message_kind kind)
 {
     mb_transmit_settings settings;
     mb_status status = mb_transmit_settings_from_config(
         c->job->common->config, mb_audio_reader_info(c->job->message).rate_hz, sent_rate_hz, &settings);
 
     settings.offset_hz = 0.0;
+    settings.voice.conditioning = kind == MESSAGE_CONDITIONED;
     settings.modulator = MB_MODULATOR_PRODUCT;
     settings.product = mb_product_settings_default();
     if (status == MB_OK) {
@@ -307,14 +308,15 @@ static mb_status create_as_sent(contest *c)
     return status;
 }
 
-static mb_status prepare(contest *c, bool as_sent, bool ideal)
+static mb_status prepare(contest *c, message_kind kind, bool ideal)
 {
+    bool as_sent = kind != MESSAGE_RECORDED;
     mb_assess_audio_settings settings = mb_assess_audio_settings_default();
     const audio_measurement *job = c->job;
     mb_status status = ideal ? create_ideal(c) : MB_OK;
 
     if (status == MB_OK && as_sent) {
-        status = create_as_sent(c);
+        status = create_as_sent(c, kind);
     }
     if (status != MB_OK) {
         return status;
@@ -337,14 +339,14 @@ static void release(contest *c)
     mb_release(c);
 }
 
-static mb_status hold_contest(audio_measurement *job, bool as_sent, bool ideal, mb_score_result *result)
+static mb_status hold_contest(audio_measurement *job, message_kind kind, bool ideal, mb_score_result *result)
 {
     contest *c = mb_allocate(1, sizeof *c);
     if (c == NULL) {
         return mb_fail(MB_ERROR_MEMORY, "", "no memory to score audio");
     }
     c->job = job;
-    mb_status status = prepare(c, as_sent, ideal);
+    mb_status status = prepare(c, kind, ideal);
     if (status == MB_OK) {
         status = one_pass(c, ideal ? "aligning the ideal" : "aligning");
     }
@@ -361,16 +363,21 @@ static mb_status hold_contest(audio_measurement *job, bool as_sent, bool ideal, 
     return status;
 }
 
-/* Against the message as recorded, and as mb-transmit conditions it; the one that fits better was sent. */
+/* Against every kind of message; the one that fits best was sent. */
 static mb_status score_audio(audio_measurement *job)
 {
-    mb_score_result as_sent = {0};
-    mb_status status = hold_contest(job, false, false, &job->score);
+    bool conditioning = mb_config_switch(job->common->config, "transmit.conditioning");
+    message_kind last = conditioning ? MESSAGE_CONDITIONED : MESSAGE_LIMITED;
+    mb_status status = hold_contest(job, MESSAGE_RECORDED, false, &job->score);
 
-    if (status == MB_OK && mb_config_switch(job->common->config, "transmit.conditioning")) {
-        status = hold_contest(job, true, false, &as_sent);
-        job->conditioned = status == MB_OK && as_sent.snr_db > job->score.snr_db;
-        job->score = job->conditioned ? as_sent : job->score;
+    job->kind = MESSAGE_RECORDED;
+    for (message_kind kind = MESSAGE_LIMITED; kind <= last && status == MB_OK; kind++) {
+        mb_score_result result;
+        status = hold_contest(job, kind, false, &result);
+        if (status == MB_OK && result.snr_db > job->score.snr_db) {
+            job->kind = kind;
+            job->score = result;
+        }
     }
     job->has_score = status == MB_OK;
     return status;
@@ -390,7 +397,7 @@ mb_status audio_measure(audio_measurement *job)
         status = score_audio(job);
     }
     if (status == MB_OK && job->has_score && job->reader != NULL && job->truth_path != NULL) {
-        status = hold_contest(job, job->conditioned, true, &job->ideal);
+        status = hold_contest(job, job->kind, true, &job->ideal);
         job->has_ideal = status == MB_OK;
     }
     return status;
@@ -398,14 +405,15 @@ mb_status audio_measure(audio_measurement *job)
 
 static void score_figures(const audio_measurement *job, app_figures *f)
 {
+    static const char *const kinds[] = {"as recorded", "band limited by transmit.*",
+                                        "conditioned by transmit.*"};
     const mb_score_result *s = &job->score;
 
     app_figures_heading(f, "Against its message");
-    app_figures_add(f,
-                    (app_figure){.kind = APP_FIGURE_TEXT_VALUE,
-                                 .name = "message_taken",
-                                 .label = "message taken",
-                                 .text = job->conditioned ? "as conditioned by transmit.*" : "as recorded"});
+    app_figures_add(f, (app_figure){.kind = APP_FIGURE_TEXT_VALUE,
+                                    .name = "message_taken",
+                                    .label = "message taken",
+                                    .text = kinds[job->kind]});
     app_figures_number(f, "snr_db", "SNR", "dB", s->snr_db, 2, "best filter of 6 ms, one gain, one polarity");
     if (job->has_ideal) {
         app_figures_number(f, "ideal_snr_db", "ideal detection", "dB", job->ideal.snr_db, 2,

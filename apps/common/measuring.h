@@ -24,6 +24,14 @@ mb_status iq_measure(iq_measurement *job);
 void iq_figures(const iq_measurement *job, app_figures *figures);
 void iq_measurement_release(iq_measurement *job);
 
+/** What is taken as the message. The band filter of a transmitter is longer than the filter that a score
+ * leaves free, and conditioning changes the gain from moment to moment: neither is a fault of reception. */
+typedef enum message_kind {
+    MESSAGE_RECORDED,   /* as it is in the file */
+    MESSAGE_LIMITED,    /* limited to the band of transmit.* */
+    MESSAGE_CONDITIONED /* that, and conditioned by transmit.* */
+} message_kind;
+
 /** Audio on its own, or against its message, or an ideal receiver against it. */
 typedef struct audio_measurement {
     const app_program *program;
@@ -33,7 +41,7 @@ typedef struct audio_measurement {
     const char *truth_path;
     double skip_s;
     bool has_score, has_ideal;
-    bool conditioned; /* the message fitted better as mb-transmit conditions it than as recorded */
+    message_kind kind; /* the message that fitted best */
     mb_speech_meter_result level;
     mb_score_result score, ideal;
 } audio_measurement;
