@@ -47,7 +47,10 @@ static mb_status fill_sidebands(const mb_assess_iq *assess, sidebands *out)
         for (size_t i = 0; i < SPECTRUM_POINTS; i++) {
             double from_hz = (double)i * out->step_hz, to_hz = from_hz + out->step_hz;
             out->frequency_hz[i] = from_hz + 0.5 * out->step_hz;
-            out->upper_db[i] = mb_power_db(power_between(&info, power, from_hz, to_hz) / whole);
+            /* half a bin on: the bin at the carrier itself belongs to neither side */
+            double after_hz = 0.5 * info.step_hz;
+            out->upper_db[i] =
+                mb_power_db(power_between(&info, power, from_hz + after_hz, to_hz + after_hz) / whole);
             out->lower_db[i] = mb_power_db(power_between(&info, power, -to_hz, -from_hz) / whole);
             out->highest_db = fmax(out->highest_db, fmax(out->upper_db[i], out->lower_db[i]));
             out->lowest_db = fmin(out->lowest_db, fmin(out->upper_db[i], out->lower_db[i]));
@@ -186,6 +189,12 @@ static void fill_offsets(const mb_assess_iq *assess, offsets *o)
     o->high_hz += room_hz;
 }
 
+/* What prints as zero has no sign. */
+static double without_minus_zero(double value)
+{
+    return fabs(value) < 0.0005 ? 0.0 : value;
+}
+
 static mb_status draw_offsets(mb_plot *plot, const mb_assess_iq *assess, const mb_assess_iq_result *result,
                               offsets *work)
 {
@@ -205,7 +214,7 @@ static mb_status draw_offsets(mb_plot *plot, const mb_assess_iq *assess, const m
                        result->carrier_offset_hz, result->truth_offset_hz, result->offset_rms_error_hz);
     } else {
         (void)snprintf(note, sizeof note, "mean %.3f Hz, drift %+.3f Hz/s", result->carrier_offset_hz,
-                       result->carrier_drift_hz_per_s);
+                       without_minus_zero(result->carrier_drift_hz_per_s));
     }
     mb_status status = mb_plot_panel(plot, &panel);
     if (status == MB_OK) {
