@@ -14,6 +14,7 @@
 enum { BLOCK = 8192, ROWS_PER_S = 100 };
 
 static double rate_hz;
+static uint64_t iq_channel;
 static const char *format, *truth_path;
 
 static const app_option options[] = {
@@ -30,6 +31,13 @@ static const app_option options[] = {
      .meaning = "samples of pipes and of the output: cf32, ci16, ci8, cu8; by the ending if left out",
      .kind = APP_TEXT,
      .target = (void *)&format},
+    {.name = "iq-channel",
+     .argument = "N",
+     .meaning = "which I/Q pair of a recording with several, 1 the first",
+     .kind = APP_WHOLE,
+     .target = &iq_channel,
+     .low = 1,
+     .high = 64},
     {.name = "truth",
      .argument = "FILE.csv",
      .meaning = "what was done, every 10 ms",
@@ -81,6 +89,7 @@ static int open_input(passage *job)
     const app_iq_input input = {.path = job->common->from,
                                 .rate_hz = rate_hz,
                                 .format = format,
+                                .channel = iq_channel,
                                 .format_of_both = true,
                                 .rewindable = level_matters(config) &&
                                               mb_config_is(config, "channel.signal_level", "auto")};

@@ -20,6 +20,7 @@ enum { BLOCKS_PER_S = 100, BLOCK_MAX = 65536 };
 static const double loudest_dbfs = -11.0;
 
 static double rate_hz;
+static uint64_t iq_channel;
 static const char *format, *track_path, *audio_format;
 
 static const app_option options[] = {
@@ -36,6 +37,13 @@ static const app_option options[] = {
      .meaning = "samples of a pipe: cf32, ci16, ci8, cu8",
      .kind = APP_TEXT,
      .target = (void *)&format},
+    {.name = "iq-channel",
+     .argument = "N",
+     .meaning = "which I/Q pair of a recording with several, 1 the first",
+     .kind = APP_WHOLE,
+     .target = &iq_channel,
+     .low = 1,
+     .high = 64},
     {.name = "offset",
      .argument = "HZ",
      .meaning = "where to look for the carrier; the key receive.offset",
@@ -100,8 +108,11 @@ typedef struct reception {
 
 static int open_input(reception *job)
 {
-    const app_iq_input input = {
-        .path = job->common->from, .rate_hz = rate_hz, .format = format, .rewindable = job->whole};
+    const app_iq_input input = {.path = job->common->from,
+                                .rate_hz = rate_hz,
+                                .format = format,
+                                .channel = iq_channel,
+                                .rewindable = job->whole};
     int code = app_iq_open(&program, &input, &job->reader);
 
     if (code == APP_CONTINUE) {

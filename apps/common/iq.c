@@ -64,6 +64,9 @@ static int refuse_open(const app_program *program, mb_status status, const char 
                                "ci8 cu8",
                                name);
     }
+    if (unnamed && strcmp(mb_last_fault()->field, "channel") == 0) {
+        return app_usage_error(program, "--iq-channel: %s", mb_last_fault()->text);
+    }
     return app_refuse(program, status);
 }
 
@@ -105,6 +108,7 @@ int app_iq_open(const app_program *program, const app_iq_input *input, mb_iq_rea
     open.format = has_known_ending(input->path, mb_iq_endings()) ? MB_IQ_BY_ENDING : stated;
     open.rate_hz = input->rate_hz;
     open.rewindable = input->rewindable;
+    open.channel = (size_t)input->channel;
     mb_status status = mb_iq_reader_open(input->path, &open, out);
     if (status != MB_OK) {
         return refuse_open(program, status, input->path);

@@ -16,6 +16,7 @@ typedef struct app_iq_input {
     const char *format;  /* --format, NULL = not given */
     bool format_of_both; /* --format is that of the output too: it says nothing about a file with an ending */
     bool rewindable;     /* the input is read twice */
+    uint64_t channel;    /* --iq-channel, which I/Q pair of several, 1 the first; 0 = not given */
 } app_iq_input;
 
 /** Opens it. Returns APP_CONTINUE, or the exit status with the sentence written. */

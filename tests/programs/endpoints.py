@@ -80,6 +80,15 @@ class Endpoints(programs.Case):
         self.refuse(2, "two.wav has 2 channels, no channel 3; choose one that is there", "mb-transmit", "--from", "two.wav", "--to",
                     "air.ci16", "--set", "audio.channel=3")
 
+    def test_one_pair_of_several_is_received(self):
+        self.succeed("mb-transmit", "--from", "report.wav", "--to", "air.ci16", "--offset", "300Hz")
+        air = programs.read_ci16(self.path("air.ci16"))
+        programs.write_wave(self.path("two.wav"), numpy.stack([0 * air.real, 0 * air.real, air.real, air.imag], axis=1),
+                            48000)
+        self.refuse(2, "--iq-channel: two.wav has 2 I/Q channels; choose one of 1 to 2", "mb-receive", "--from",
+                    "two.wav", "--to", "heard.wav")
+        self.assertAlmostEqual(self.receive("two.wav", "--iq-channel", "2")["carrier_offset_hz"], 300, delta=0.05)
+
     def test_audio_is_written_at_the_rate_and_in_the_format_asked_for(self):
         self.succeed("mb-transmit", "--from", "report.wav", "--to", "air.cf32", "--rate", "48000")
         self.succeed("mb-receive", "--from", "air.cf32", "--rate", "48000", "--to", "heard.wav", "--audio-rate",
