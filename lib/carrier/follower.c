@@ -157,7 +157,7 @@ static size_t check_lock(follower *f)
     mb_sighting here =
         acquisition_check(&f->acquisition, f->history + f->history_end, tracked_hz, &elsewhere);
 
-    if (here.coherence > 0.15 && here.purity > 0.6) {
+    if (here.coherence > 0.15 && here.purity > (f->confirmed ? 0.6 : 0.75)) {
         f->confirmations++;
         f->confirmed = true;
         f->doubts = f->rivals = 0;

@@ -77,6 +77,7 @@ mb_status mb_transmit_settings_from_config(const mb_config *config, double audio
     s.offset_hz = mb_config_number(config, "transmit.offset");
     s.voice.low_hz = mb_config_number(config, "transmit.low_cut");
     s.voice.high_hz = mb_config_number(config, "transmit.high_cut");
+    s.voice.look_ahead_s = fmin(fmax(s.voice.look_ahead_s, 3.0 / s.voice.low_hz), 0.015);
     s.voice.peak = sqrt(mb_db_power(mb_config_number(config, "transmit.peak")));
     s.voice.conditioning = mb_config_switch(config, "transmit.conditioning");
     s.voice.compression_ratio = mb_config_number(config, "transmit.compression");

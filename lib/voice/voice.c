@@ -41,14 +41,14 @@ mb_voice_settings mb_voice_settings_default(void)
         .peak = 0.891,
         .conditioning = true,
         .gain_db = 0.0,
-        .drive_db = 8.0,
+        .drive_db = 10.0,
         .level_s = 4.0,
-        .max_gain_db = 24.0,
+        .max_gain_db = 30.0,
         .compression_ratio = 3.0,
         .compression_threshold_db = -20.0,
         .attack_s = 0.005,
         .release_s = 0.08,
-        .look_ahead_s = 0.004,
+        .look_ahead_s = 0.010,
     };
 }
 

@@ -32,7 +32,8 @@ typedef struct mb_voice_settings {
     double compression_threshold_db; /* lower end of compression, re strong syllables [-60, 0] */
     double attack_s;                 /* compressor, towards less gain [0.001, 1] */
     double release_s;                /* compressor, towards more gain [0.01, 5] */
-    double look_ahead_s;             /* how far the gain sees ahead; length of its window [0.002, 0.015] */
+    double look_ahead_s;             /* how far the gain sees ahead; length of its window [0.002, 0.015]; from
+                                        2.4 / low_hz on, its changes leave no carrier at 0 Hz */
 } mb_voice_settings;
 
 /** What the stage knows of itself; levels of the input after the band limit. */
@@ -63,7 +64,7 @@ MB_API mb_status mb_voice_create(const mb_voice_settings *settings, mb_voice **o
  */
 MB_API void mb_voice_process(mb_voice *voice, const float *in, size_t count, float *out);
 
-/** Exact delay of the output in samples, conditioning on or off; by default 794, 16.5 ms. Thread: any. */
+/** Exact delay of the output in samples, conditioning on or off; by default 1082, 22.5 ms. Thread: any. */
 MB_API size_t mb_voice_delay_samples(const mb_voice *voice);
 
 /** State after the last sample processed. Thread: stream. */
