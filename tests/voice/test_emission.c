@@ -24,15 +24,18 @@ static const char *const spoken[SPOKEN][2] = {
     {"nl+m4 -p 15", "Bij de hut ligt veertig centimeter sneeuw, de wind komt uit het noordwesten."},
 };
 
-/* Power of the mean over the mean power, dB: the carrier an ideal product would send of this message. */
+/* Power of the mean over the mean power, dB: the carrier an ideal product would send of this message. Under a
+ * Hann window, so that the message cut off at the end does not count. */
 static double residual_carrier_dbc(const float *samples, size_t count)
 {
-    double sum = 0.0;
+    double sum = 0.0, weights = 0.0;
 
     for (size_t i = 0; i < count; i++) {
-        sum += (double)samples[i];
+        double weight = 1.0 - cos(2.0 * MB_PI * ((double)i + 0.5) / (double)count);
+        sum += weight * (double)samples[i];
+        weights += weight;
     }
-    double mean = sum / (double)count;
+    double mean = sum / weights;
     return mb_power_db(mean * mean / mean_square(samples, count));
 }
 
