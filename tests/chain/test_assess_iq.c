@@ -1,7 +1,7 @@
 /* Assessment of IQ samples: figures known from how the signal was made. */
 #include "assess_signals.h"
 
-enum { RATE = 48000, COUNT = 9 * RATE, SHORT = 4 * RATE };
+enum { RATE = 48000, COUNT = 7 * RATE, SHORT = 3 * RATE };
 
 static mb_assess_iq_settings settings_at(double rate_hz)
 {
@@ -70,7 +70,7 @@ static void a_leak_of_80_db_below_is_measured_in_sixteen_bits(void **state)
                               .leak_dbc = -80.0,
                               .noise_db = -INFINITY,
                               .sixteen_bit = true};
-        size_t count = (size_t)(5.0 * rates[i]);
+        size_t count = (size_t)(4.0 * rates[i]);
         float *message = speech_like(rates[i], count, 12);
         mb_assess_iq_result r = figures_of(&plan, message, count, false);
         assert_true(r.found && r.emission.carrier_found);
@@ -169,7 +169,7 @@ static void figures_do_not_depend_on_the_blocks(void **state)
     (void)state;
     emission_plan plan = {
         .rate_hz = RATE, .offset_hz = 137.0, .drift_hz_per_s = 0.5, .leak_dbc = -40.0, .noise_db = -20.0};
-    const size_t count = SHORT, blocks[] = {SHORT, 1000, 7};
+    const size_t count = SHORT, blocks[] = {SHORT, 1000, 61};
     float *message = speech_like(RATE, count, 15);
     mb_cf32 *air = on_air(&plan, message, count, 5);
     mb_assess_iq_settings settings = settings_at(RATE);
