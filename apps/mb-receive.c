@@ -15,9 +15,8 @@
 
 enum { BLOCKS_PER_S = 100, BLOCK_MAX = 65536 };
 
-/* Of a recording the strongest 10 ms come out at this mean square: room for the crests of a voice below full
- * scale. */
-static const double loudest_dbfs = -11.0;
+/* Room left above the highest envelope of a recording, for what the audio filter may add to it. */
+static const double room_db = 2.0;
 
 static double rate_hz;
 static uint64_t iq_channel;
@@ -240,20 +239,20 @@ static mb_status listen_block(void *user, size_t *taken)
                        : mb_recording_listen_cf32(job->recording, job->samples, *taken);
 }
 
-/* The track into its table, and the gain that the loudest point asks for. */
+/* The track into its table, and the gain that brings the highest envelope of the baseband to room_db below
+ * full scale. */
 static mb_status take_points(reception *job)
 {
     size_t count = mb_recording_point_count(job->recording);
-    double loudest_db = -400.0;
+    double peak_db = mb_power_db(pow(mb_recording_peak(job->recording), 2.0));
     mb_status status = MB_OK;
 
     for (size_t i = 0; i < count && status == MB_OK; i++) {
         mb_track_point point = mb_recording_point(job->recording, i);
-        loudest_db = fmax(loudest_db, point.in_phase_dbfs);
         status = app_track_point(&job->track, &point);
     }
     if (!mb_config_switch(job->common->config, "receive.gain_control")) {
-        job->gain_db = round(loudest_dbfs - loudest_db);
+        job->gain_db = floor(-room_db - peak_db);
     }
     job->gain = (float)pow(10.0, job->gain_db / 20.0);
     return status;

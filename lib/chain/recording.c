@@ -16,6 +16,7 @@ struct mb_recording {
     uint64_t position; /* baseband samples of the second pass */
     uint64_t skip;     /* audio samples still to be dropped: the delay of the chain */
     uint64_t made;     /* audio samples handed out */
+    float peak;        /* highest |sample|^2 of the baseband in the first pass */
     bool sixteen_bit;  /* kind of sample of the second pass */
 };
 
@@ -74,6 +75,20 @@ void mb_recording_destroy(mb_recording *recording)
     }
 }
 
+static mb_status listen_baseband(mb_recording *r, size_t n)
+{
+    for (size_t i = 0; i < n; i++) {
+        float re = r->baseband[i].re, im = r->baseband[i].im;
+        r->peak = fmaxf(r->peak, re * re + im * im);
+    }
+    return mb_smoother_listen(r->smoother, r->baseband, n);
+}
+
+double mb_recording_peak(const mb_recording *r)
+{
+    return sqrt((double)r->peak);
+}
+
 mb_status mb_recording_listen_cf32(mb_recording *r, const mb_cf32 *in, size_t n)
 {
     mb_status status = MB_OK;
@@ -81,7 +96,7 @@ mb_status mb_recording_listen_cf32(mb_recording *r, const mb_cf32 *in, size_t n)
     for (size_t done = 0; done < n && status == MB_OK;) {
         size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
         size_t count = mb_decimator_process_cf32(r->front, in + done, run, r->baseband);
-        status = mb_smoother_listen(r->smoother, r->baseband, count);
+        status = listen_baseband(r, count);
         done += run;
     }
     return status;
@@ -94,7 +109,7 @@ mb_status mb_recording_listen_ci16(mb_recording *r, const mb_ci16 *in, size_t n)
     for (size_t done = 0; done < n && status == MB_OK;) {
         size_t run = n - done < WIDEBAND_CHUNK ? n - done : WIDEBAND_CHUNK;
         size_t count = mb_decimator_process_ci16(r->front, in + done, run, r->baseband);
-        status = mb_smoother_listen(r->smoother, r->baseband, count);
+        status = listen_baseband(r, count);
         done += run;
     }
     return status;

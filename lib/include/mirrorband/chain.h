@@ -130,6 +130,8 @@ MB_API mb_status mb_recording_create(const mb_receive_settings *settings, mb_rec
 /** First pass. Errors: MEMORY. Thread: control. */
 MB_API mb_status mb_recording_listen_cf32(mb_recording *recording, const mb_cf32 *in, size_t n);
 MB_API mb_status mb_recording_listen_ci16(mb_recording *recording, const mb_ci16 *in, size_t n);
+/** Highest magnitude of the baseband in the first pass; the audio comes near it at most. Thread: any. */
+MB_API double mb_recording_peak(const mb_recording *recording);
 /** Between the passes. Errors: NO_SIGNAL, MEMORY. Thread: control. */
 MB_API mb_status mb_recording_resolve(mb_recording *recording);
 /** Second pass: n samples in, audio out, at most mb_recording_output_bound. Thread: stream. */
