@@ -17,7 +17,7 @@ static const char *const head =
     "td { padding: 0.15rem 1.5rem 0.15rem 0; border-top: 1px solid rgba(128, 128, 128, 0.3); }\n"
     "td.value { font-variant-numeric: tabular-nums; white-space: nowrap; }\n"
     "td.remark { opacity: 0.7; }\n"
-    "svg { max-width: 100%; height: auto; }\n"
+    "body > svg { max-width: 100%; height: auto; }\n"
     "</style>\n";
 
 static void put_text(FILE *page, const char *text)
