@@ -372,7 +372,7 @@ static mb_status score_audio(audio_measurement *job)
 
     job->kind = MESSAGE_RECORDED;
     for (message_kind kind = MESSAGE_LIMITED; kind <= last && status == MB_OK; kind++) {
-        mb_score_result result;
+        mb_score_result result = {0};
         status = hold_contest(job, kind, false, &result);
         if (status == MB_OK && result.snr_db > job->score.snr_db) {
             job->kind = kind;
