@@ -114,27 +114,28 @@ void mb_speech_meter_process_cf32(mb_speech_meter *meter, const mb_cf32 *in, siz
 }
 
 /* Level over the samples that a threshold calls active, minus that threshold, falls as the threshold rises;
- * the active level is read where it is the margin, on a straight line in dB between the two thresholds around
- * it. */
+ * the active level is read where it first meets the margin, on a straight line in dB between the two
+ * thresholds around it. (Above that it may rise again: a threshold reached for a moment only has very few
+ * samples.) */
 static double active_level(const mb_speech_meter *meter)
 {
-    double active = 0.0, level_above = -400.0, excess_above = -400.0;
+    double active = 0.0, level_below = -400.0, excess_below = -400.0;
 
-    for (int i = THRESHOLDS - 1; i >= 0; i--) {
+    for (int i = 0; i < THRESHOLDS; i++) {
         active += (double)meter->held[i];
-        if (active <= 0.0) {
-            continue;
-        }
+    }
+    for (int i = 0; i < THRESHOLDS && active > 0.0; i++) {
         double level = mb_power_db(meter->square_sum / active);
         double excess = level - 20.0 * log10(2.0) * (i + LOWEST_EXPONENT);
-        if (excess >= margin_db) {
-            double share = excess_above > -400.0 ? (margin_db - excess) / (excess_above - excess) : 0.0;
-            return level + share * (level_above - level);
+        if (excess <= margin_db) {
+            double share = i > 0 ? (margin_db - excess) / (excess_below - excess) : 0.0;
+            return level + share * (level_below - level);
         }
-        level_above = level;
-        excess_above = excess;
+        level_below = level;
+        excess_below = excess;
+        active -= (double)meter->held[i];
     }
-    return level_above;
+    return level_below;
 }
 
 mb_speech_meter_result mb_speech_meter_state(const mb_speech_meter *meter)

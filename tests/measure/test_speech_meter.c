@@ -80,6 +80,26 @@ static void recorded_speech_has_the_level_of_a_second_implementation(void **stat
     }
 }
 
+/* 0.18 sin lies below the threshold 1/8 by its envelope of 2/pi 0.18 = 0.115; a fifth of a second of 0.25
+ * reaches it. Derived: mean square 0.18^2/2 with 1 % at 0.25^2/2, -17.85 dB, all of it active. The level must
+ * not be read at the threshold that only the burst reaches, where 20 s of energy meet half a second (-1 dB).
+ */
+static void a_moment_above_the_rest_does_not_become_the_level(void **state)
+{
+    float *samples = mb_allocate(COUNT, sizeof *samples);
+
+    (void)state;
+    assert_non_null(samples);
+    for (int i = 0; i < COUNT; i++) {
+        double amplitude = i >= COUNT / 2 && i < COUNT / 2 + RATE / 5 ? 0.25 : 0.18;
+        samples[i] = (float)(amplitude * sin(2.0 * MB_PI * 1000.0 / RATE * i));
+    }
+    mb_speech_meter_result result = level_of(samples, COUNT, RATE);
+    mb_release(samples);
+    assert_near(result.active_level_db, -17.85, 0.1);
+    assert_at_least(result.activity, 0.98);
+}
+
 /* A factor moves the level by itself: exact for powers of two (thresholds are such), within the 0.1 dB by
  * which the straight line between thresholds may err for other factors. */
 static void level_moves_with_the_gain_over_140_decibels(void **state)
@@ -174,6 +194,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(sine_bursts_have_the_level_of_the_recommendation),
         cmocka_unit_test(recorded_speech_has_the_level_of_a_second_implementation),
+        cmocka_unit_test(a_moment_above_the_rest_does_not_become_the_level),
         cmocka_unit_test(level_moves_with_the_gain_over_140_decibels),
         cmocka_unit_test(a_carrier_does_not_change_the_level),
         cmocka_unit_test(cuts_and_a_reset_change_nothing),
