@@ -65,7 +65,7 @@ static const app_option options[] = {
      .key = "audio.rate"},
     {.name = "audio-format",
      .argument = "WORD",
-     .meaning = "samples of the audio: s16, s24 or f32 (s16 in files)",
+     .meaning = "samples of the audio: s16, s24 or f32 (f32 in files, s24 in .flac)",
      .kind = APP_TEXT,
      .target = (void *)&audio_format},
     {.name = "track",
@@ -151,6 +151,12 @@ static int create_outputs(reception *job)
     }
     if (audio_format == NULL && app_is_pipe(job->common->to)) {
         return app_usage_error(&program, "--audio-format is missing: a pipe holds raw audio, s16 or f32");
+    }
+    if (audio_format == NULL) {
+        /* the level is what came in: floats neither clip a strong signal nor coarsen a faint one */
+        const char *ending = strrchr(job->common->to, '.');
+        bool flac = ending != NULL && strcmp(ending, ".flac") == 0;
+        settings.format = flac ? MB_AUDIO_S24 : MB_AUDIO_F32;
     }
     settings.rate_hz = job->audio_rate_hz;
     mb_status status = mb_audio_writer_create(job->common->to, &settings, &job->writer);
