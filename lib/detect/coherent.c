@@ -86,8 +86,8 @@ static mb_status make_filters(mb_coherent *c, const mb_coherent_settings *s)
 {
     size_t count = 0;
     double half = 0.5 * s->transition_hz;
-    mb_status status = mb_design_bandpass(fmax(s->low_hz - half, 0.5 * half), s->high_hz + half,
-                                          s->transition_hz, 60.0, s->rate_hz, &c->taps, &count);
+    mb_status status = mb_design_bandpass(s->low_hz - half, s->high_hz + half, s->transition_hz, 60.0,
+                                          s->rate_hz, &c->taps, &count);
 
     c->delay = (count - 1) / 2;
     if (status == MB_OK && c->sideband != MB_SIDEBAND_BOTH) {
@@ -111,7 +111,9 @@ mb_status mb_coherent_create(const mb_coherent_settings *settings, mb_coherent *
         return mb_fail(MB_ERROR_MEMORY, "", "no memory for the detector");
     }
     coherent->sideband = settings->sideband;
-    mb_status status = make_filters(coherent, settings);
+    mb_coherent_settings fitted = *settings;
+    fitted.transition_hz = fmin(fitted.transition_hz, fitted.low_hz); /* there is no more room above 0 Hz */
+    mb_status status = make_filters(coherent, &fitted);
     if (status != MB_OK) {
         mb_coherent_destroy(coherent);
         return status;

@@ -2,12 +2,16 @@
 
 #include <math.h>
 
+/* Power of a short time over the followed one that counts as a louder voice, not as a loud syllable: 9 dB. */
+#define LOUDER 8.0
+
 struct mb_gain_control {
     mb_gain_control_settings settings;
     double attack_keep, release_keep; /* per sample */
     double level;                     /* wanted root mean square */
     double least_power;               /* power at which the gain limit is reached */
-    double power;                     /* followed power of the input */
+    double brief;                     /* power of the input over the attack time */
+    double power;                     /* its mean over the release time: what the gain goes by */
     double gain;
     bool hold;
 };
@@ -47,6 +51,7 @@ mb_status mb_gain_control_create(const mb_gain_control_settings *settings, mb_ga
 void mb_gain_control_reset(mb_gain_control *control)
 {
     control->power = mb_db_power(control->settings.level_dbfs);
+    control->brief = 0.0;
     control->gain = 1.0;
     control->hold = false;
 }
@@ -66,16 +71,22 @@ double mb_gain_control_gain_db(const mb_gain_control *control)
     return 20.0 * log10(control->gain);
 }
 
+/* A mean of the power, so that the level comes out as root mean square; a louder voice is followed fast. */
+static void follow_power(mb_gain_control *control, double power)
+{
+    control->brief += (1.0 - control->attack_keep) * (power - control->brief);
+    if (control->brief > LOUDER * control->power) {
+        control->power += (1.0 - control->attack_keep) * (control->brief - control->power);
+    } else if (!control->hold) {
+        control->power += (1.0 - control->release_keep) * (power - control->power);
+    }
+}
+
 void mb_gain_control_process(mb_gain_control *control, const float *in, size_t n, float *out)
 {
     for (size_t i = 0; i < n; i++) {
         double x = isfinite(in[i]) ? (double)in[i] : 0.0;
-        double power = fmin(x * x, 1e12);
-        if (power > control->power) {
-            control->power += (1.0 - control->attack_keep) * (power - control->power);
-        } else if (!control->hold) {
-            control->power += (1.0 - control->release_keep) * (power - control->power);
-        }
+        follow_power(control, fmin(x * x, 1e12));
         control->gain = control->level / sqrt(fmax(control->power, control->least_power));
         out[i] = (float)fmax(-1.0, fmin(1.0, control->gain * x));
     }

@@ -23,7 +23,7 @@ typedef struct mb_coherent_settings {
     double rate_hz;       /* of baseband and audio, 8 kHz to 192 kHz */
     double low_hz;        /* audio is flat from here, 50 to 1000 Hz */
     double high_hz;       /* to here, 1000 Hz to 0.45 rate */
-    double transition_hz; /* and 60 dB down this much farther out, 30 to 1000 Hz */
+    double transition_hz; /* and 60 dB down this much farther out, 30 to 1000 Hz; low_hz where that is less */
     mb_sideband sideband;
 } mb_coherent_settings;
 
