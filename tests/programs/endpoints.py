@@ -98,8 +98,11 @@ class Endpoints(programs.Case):
         # loud enough to hear at once, and never at the ceiling
         self.assertGreater(numpy.max(numpy.abs(audio)), 0.1)
         self.assertLess(numpy.max(numpy.abs(audio)), 0.99)
-        self.succeed("mb-receive", "--from", "air.cf32", "--rate", "48000", "--to", "heard.flac", "--audio-format",
-                     "s24")
+        for more, subformat in ((), b"IEEE_FLOAT"), (("--audio-format", "s16"), b"Bit Width     : 16"):
+            self.succeed("mb-receive", "--from", "air.cf32", "--rate", "48000", "--to", "heard.wav", *more)
+            kind = subprocess.run(["sndfile-info", "heard.wav"], cwd=self.folder, capture_output=True, check=True)
+            self.assertIn(subformat, kind.stdout)
+        self.succeed("mb-receive", "--from", "air.cf32", "--rate", "48000", "--to", "heard.flac", "--quiet")
         self.succeed("mb-receive", "--from", "air.cf32", "--rate", "48000", "--to", "heard.rf64", "--audio-format",
                      "f32")
         kind = subprocess.run(["sndfile-info", "heard.rf64"], cwd=self.folder, capture_output=True, check=True)

@@ -6,9 +6,11 @@ import subprocess
 import sys
 import tempfile
 import unittest
+import warnings
 import wave
 
 import numpy
+import scipy.io.wavfile
 
 ROOT = os.path.dirname(os.path.dirname(os.path.dirname(os.path.abspath(__file__))))
 VOICES = "/usr/share/asterisk/sounds/en_US_f_Allison/"
@@ -89,9 +91,11 @@ def write_wave(path, samples, rate=8000):
 
 
 def read_wave(path):
-    """Samples as float and the rate."""
-    with wave.open(path) as file:
-        return numpy.frombuffer(file.readframes(file.getnframes()), "<i2") / 32768.0, file.getframerate()
+    """Samples as float, of 16-bit integers or 32-bit floats, and the rate."""
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore", scipy.io.wavfile.WavFileWarning)  # chunks beside the samples
+        rate, samples = scipy.io.wavfile.read(path)
+    return (samples / 32768.0 if samples.dtype == numpy.int16 else samples.astype(float)), rate
 
 
 def write_cf32(path, samples):
