@@ -41,7 +41,7 @@ static mb_status check_settings(const mb_transmit_settings *s)
     double least_hz = 2.2 * (s->voice.high_hz + fabs(s->offset_hz));
 
     if (mb_check_range("audio_rate_hz", s->audio_rate_hz, 8000.0, 192000.0, "Hz") != MB_OK ||
-        mb_check_range("rate_hz", s->rate_hz, 8000.0, 25e6, "Hz") != MB_OK) {
+        mb_check_range("rate_hz", s->rate_hz, VOICE_RATE_HZ, 25e6, "Hz") != MB_OK) {
         return MB_ERROR_ARGUMENT;
     }
     if (s->rate_hz < least_hz) {

@@ -27,8 +27,8 @@ typedef enum mb_modulator_kind {
 
 typedef struct mb_transmit_settings {
     double audio_rate_hz; /* of the audio in, 8 kHz to 192 kHz */
-    double rate_hz;       /* of the IQ out, 12 kHz to 25 MHz, at least twice high cut and offset together */
-    double offset_hz;     /* of the suppressed carrier in the output */
+    double rate_hz;   /* of the IQ out, 48 kHz to 25 MHz, at least 2.2 times high cut and offset together */
+    double offset_hz; /* of the suppressed carrier in the output */
     mb_voice_settings voice; /* voice.rate_hz is set by the chain */
     mb_modulator_kind modulator;
     mb_equivalent equivalent; /* MB_MODULATOR_EQUIVALENT: from one of the models of modulate.h */
