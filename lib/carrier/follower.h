@@ -52,6 +52,7 @@ typedef struct follower {
     double active_i, active_q; /* decaying sums over active speech */
     double active_energy, active_noise;
     double surprise;      /* running mean of normalised squared innovations */
+    bool heard;           /* the track has had an update */
     unsigned idle_blocks; /* since the last update */
     unsigned doubts, rivals;
     uint64_t confirmations, contradictions; /* long looks that agreed with the lock, and that did not */

@@ -109,9 +109,10 @@ static mb_phase_state state_from_behind(const pass *p, size_t from)
 /*
  * Multiple of pi to add behind a pause: a is the prediction over it, b what is known behind it, both with
  * frequency and drift. d = b - a + k pi in phase is least surprising, d' inverse(S) d least, at real k =
- * -(inverse(S) d)_0 / (pi inverse(S)_00); the nearest whole number is taken.
+ * -(inverse(S) d)_0 / (pi inverse(S)_00); the nearest whole number is taken. It is sure when the next one is
+ * less likely by a factor of 100 or more, which the difference of the two quadratic forms tells.
  */
-static double branch_step(const mb_phase_state *a, const mb_phase_state *b)
+static double branch_step(const mb_phase_state *a, const mb_phase_state *b, bool *sure)
 {
     double s[6], d[3] = {b->phase_rad - a->phase_rad, b->frequency_rad_s - a->frequency_rad_s,
                          b->drift_rad_s2 - a->drift_rad_s2};
@@ -122,7 +123,11 @@ static double branch_step(const mb_phase_state *a, const mb_phase_state *b)
     double i00 = s[3] * s[5] - s[4] * s[4]; /* first row of the inverse, times the determinant */
     double i01 = s[2] * s[4] - s[1] * s[5];
     double i02 = s[1] * s[4] - s[2] * s[3];
-    return MB_PI * nearbyint(-(d[0] + (i01 * d[1] + i02 * d[2]) / i00) / MB_PI);
+    double determinant = s[0] * i00 + s[1] * i01 + s[2] * i02;
+    double best = -(d[0] + (i01 * d[1] + i02 * d[2]) / i00) / MB_PI, whole = nearbyint(best);
+    double less_likely = MB_PI * MB_PI * i00 / determinant * (1.0 - 2.0 * fabs(best - whole));
+    *sure = *sure && less_likely > 2.0 * log(100.0);
+    return MB_PI * whole;
 }
 
 static mb_phase_state restart_state(const knot *at, const mb_phase_state *predicted)
@@ -133,9 +138,11 @@ static mb_phase_state restart_state(const knot *at, const mb_phase_state *predic
     return state;
 }
 
-/* Filters forward with the branches settled; the knots get the states anew. */
-static void filter_forward(const pass *p, size_t first)
+/* Filters forward with the branches settled; the knots get the states anew. False if a branch was not sure.
+ */
+static bool filter_forward(const pass *p, size_t first)
 {
+    bool sure = true;
     mb_phase_state state = knot_list_at(p->list, first)->filtered;
     double branch = 0.0; /* added to all that was measured from here on */
 
@@ -150,7 +157,7 @@ static void filter_forward(const pass *p, size_t first)
             if (state.covariance[0] > SURE_SIGMA_RAD * SURE_SIGMA_RAD && i > first && !at->restart) {
                 mb_phase_state behind = state_from_behind(p, i);
                 behind.phase_rad += branch;
-                branch += branch_step(&state, &behind);
+                branch += branch_step(&state, &behind, &sure);
             }
             double variance = (double)at->variance_rad2;
             double limit = 5.0 * sqrt(state.covariance[0] + variance);
@@ -160,6 +167,7 @@ static void filter_forward(const pass *p, size_t first)
         at->filtered = state;
         mb_phase_predict(&state, &p->settings->noise, p->step_s);
     }
+    return sure;
 }
 
 static void smooth_back(const pass *p, size_t first)
@@ -184,7 +192,7 @@ static void carry_to_start(const pass *p, size_t first)
     }
 }
 
-void knots_smooth(knot_list *list, const mb_recovery_settings *settings, double step_s)
+bool knots_smooth(knot_list *list, const mb_recovery_settings *settings, double step_s)
 {
     pass p = {list, settings, step_s};
     size_t first = 0;
@@ -193,9 +201,10 @@ void knots_smooth(knot_list *list, const mb_recovery_settings *settings, double 
         first++;
     }
     if (first == list->count) {
-        return;
+        return true;
     }
-    filter_forward(&p, first);
+    bool sure = filter_forward(&p, first);
     smooth_back(&p, first);
     carry_to_start(&p, first);
+    return sure;
 }

@@ -18,7 +18,10 @@ bool knot_list_reserve(knot_list *list, size_t count);
 knot *knot_list_at(const knot_list *list, size_t index);
 void knot_list_free(knot_list *list);
 
-/** Replaces the filtered states by smoothed ones, with the branch of pi settled behind every pause. */
-void knots_smooth(knot_list *list, const mb_recovery_settings *settings, double step_s);
+/**
+ * Replaces the filtered states by smoothed ones, with the branch of pi settled behind every pause; false if
+ * one of them might as well be the other way round.
+ */
+bool knots_smooth(knot_list *list, const mb_recovery_settings *settings, double step_s);
 
 #endif

@@ -135,8 +135,9 @@ mb_status mb_smoother_resolve(mb_smoother *s)
             "the offset or widen the span",
             s->follower.settings.span_hz);
     }
-    knots_smooth(&s->knots, &s->follower.settings, s->follower.block_s);
+    bool sure = knots_smooth(&s->knots, &s->follower.settings, s->follower.block_s);
     summarise(s);
+    s->summary.polarity_uncertain = !sure;
     s->resolved = true;
     s->position = 0;
     return MB_OK;

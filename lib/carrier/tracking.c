@@ -8,6 +8,7 @@
 #define SURPRISE_BLOCKS 8.0
 #define SURPRISE_LIMIT  5.0 /* mean normalised squared innovation that says the model is broken */
 #define VARIANCE_FLOOR  1e-4
+#define UNSURE_VARIANCE 0.25 /* of the phase when the voice returns: the polarity may be wrong, 1 in 600 */
 
 enum { IDLE_TO_HOLD = 10 };
 
@@ -38,6 +39,7 @@ void tracking_begin(follower *f, const mb_sighting *seen, const mb_cf32 *samples
     f->active_i = f->active_q = f->active_energy = f->active_noise = 0.0;
     f->surprise = 1.0;
     f->idle_blocks = 0;
+    f->heard = false;
 }
 
 double tracking_quality(const follower *f)
@@ -127,14 +129,15 @@ void tracking_block(follower *f, const mb_cf32 *samples, knot *out)
         double angle = 0.5 * atan2(reading.square_im, reading.square_re);
         double innovation = reading.reference_rad + angle - f->state.phase_rad;
         innovation = nearest_branch(innovation, 0.0);
-        update_phase(f, innovation, block_variance(f, mirrored, noise), out);
-        if (f->idle_blocks >= IDLE_TO_HOLD) {
+        if (f->idle_blocks >= IDLE_TO_HOLD && f->heard) {
             f->holds++;
+            f->polarity_uncertain = f->polarity_uncertain || f->state.covariance[0] > UNSURE_VARIANCE;
         }
+        update_phase(f, innovation, block_variance(f, mirrored, noise), out);
         f->idle_blocks = 0;
+        f->heard = true;
     } else {
         f->idle_blocks++;
-        f->polarity_uncertain = f->polarity_uncertain || f->state.covariance[0] > 0.25;
     }
     double real_part = turned_real(&reading, f->state.phase_rad);
     follow_noise(f, 0.5 * (reading.energy - real_part));
