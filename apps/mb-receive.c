@@ -18,6 +18,9 @@ enum { BLOCKS_PER_S = 100, BLOCK_MAX = 65536 };
 /* Room left above the highest envelope of a recording, for what the audio filter may add to it. */
 static const double room_db = 2.0;
 
+/* Live, in integers: where the loudest 10 ms heard up to the first lock come to lie. */
+static const double live_level_dbfs = -28.0;
+
 static double rate_hz;
 static uint64_t iq_channel;
 static const char *format, *track_path, *audio_format;
@@ -65,7 +68,7 @@ static const app_option options[] = {
      .key = "audio.rate"},
     {.name = "audio-format",
      .argument = "WORD",
-     .meaning = "samples of the audio: s16, s24 or f32 (f32 in files, s24 in .flac)",
+     .meaning = "samples of the audio: s16, s24 or f32 (s16 in files)",
      .kind = APP_TEXT,
      .target = (void *)&audio_format},
     {.name = "track",
@@ -100,7 +103,9 @@ typedef struct reception {
     float *audio;
     size_t audio_bound;
     double audio_rate_hz;
-    float gain; /* of the audio of a recording */
+    bool integer; /* the audio written has a full scale */
+    bool gain_chosen;
+    float gain; /* of the audio, one for all of it */
     double gain_db;
     mb_receive_state state;
 } reception;
@@ -152,12 +157,7 @@ static int create_outputs(reception *job)
     if (audio_format == NULL && app_is_pipe(job->common->to)) {
         return app_usage_error(&program, "--audio-format is missing: a pipe holds raw audio, s16 or f32");
     }
-    if (audio_format == NULL) {
-        /* the level is what came in: floats neither clip a strong signal nor coarsen a faint one */
-        const char *ending = strrchr(job->common->to, '.');
-        bool flac = ending != NULL && strcmp(ending, ".flac") == 0;
-        settings.format = flac ? MB_AUDIO_S24 : MB_AUDIO_F32;
-    }
+    job->integer = settings.format != MB_AUDIO_F32;
     settings.rate_hz = job->audio_rate_hz;
     mb_status status = mb_audio_writer_create(job->common->to, &settings, &job->writer);
     if (status == MB_OK) {
@@ -186,12 +186,41 @@ static mb_status pump(reception *job, const char *doing, app_step step)
 /* ---- live ------------------------------------------------------------------------------------------------
  */
 
+static mb_status put(reception *job, size_t made)
+{
+    for (size_t i = 0; i < made; i++) {
+        job->audio[i] *= job->gain;
+    }
+    return mb_audio_writer_write(job->writer, job->audio, made);
+}
+
+static void set_gain(reception *job, double gain_db)
+{
+    job->gain_db = gain_db;
+    job->gain = (float)pow(10.0, gain_db / 20.0);
+    job->gain_chosen = true;
+}
+
+/* Integers would clip or coarsen what comes at any level: the first lock sets one gain for all that follows.
+ * The audio of that moment is still inside the chain. */
+static void choose_live_gain(reception *job)
+{
+    const mb_carrier_state *carrier = &job->state.carrier;
+    bool wanted = job->integer && !mb_config_switch(job->common->config, "receive.gain_control");
+
+    if (wanted && !job->gain_chosen && carrier->locks > 0) {
+        set_gain(job, round(live_level_dbfs - carrier->loudest_dbfs));
+    }
+}
+
 static mb_status receive_samples(reception *job, size_t count)
 {
     size_t made = job->native ? mb_receive_process_ci16(job->live, job->samples, count, job->audio)
                               : mb_receive_process_cf32(job->live, job->samples, count, job->audio);
 
-    return mb_audio_writer_write(job->writer, job->audio, made);
+    job->state = mb_receive_state_now(job->live);
+    choose_live_gain(job);
+    return put(job, made);
 }
 
 static mb_status receive_block(void *user, size_t *taken)
@@ -203,7 +232,6 @@ static mb_status receive_block(void *user, size_t *taken)
         return status;
     }
     status = receive_samples(job, *taken);
-    job->state = mb_receive_state_now(job->live);
     mb_track_point point = app_track_live(&job->state.carrier);
     return status == MB_OK ? app_track_point(&job->track, &point) : status;
 }
@@ -258,18 +286,9 @@ static mb_status take_points(reception *job)
         status = app_track_point(&job->track, &point);
     }
     if (!mb_config_switch(job->common->config, "receive.gain_control")) {
-        job->gain_db = floor(-room_db - peak_db);
+        set_gain(job, floor(-room_db - peak_db));
     }
-    job->gain = (float)pow(10.0, job->gain_db / 20.0);
     return status;
-}
-
-static mb_status put(reception *job, size_t made)
-{
-    for (size_t i = 0; i < made; i++) {
-        job->audio[i] *= job->gain;
-    }
-    return mb_audio_writer_write(job->writer, job->audio, made);
 }
 
 static mb_status process_block(void *user, size_t *taken)
@@ -416,7 +435,7 @@ static void print_summary(const reception *job, FILE *stream)
                   (unsigned long long)carrier.holds);
     (void)fprintf(stream, "  %-15s %s\n", "polarity",
                   carrier.polarity_uncertain ? "not certain: a pause was too long" : "certain throughout");
-    if (job->whole) {
+    if (job->gain_chosen) {
         (void)fprintf(stream, "  %-15s %+.0f dB on the audio, the same throughout\n", "gain", job->gain_db);
     }
 }

@@ -109,8 +109,8 @@ class BadInput(programs.Case):
                      "--rate", "48000", "--format", "ci8")
 
     def test_a_rate_too_low_for_the_message(self):
-        self.transmit(2, "the sample rate does not do: rate_hz must be between 8000 and 2.5e+07 Hz; it is 4000", "report.wav", "out.ci16",
-                      "--rate", "4000")
+        self.transmit(2, "the sample rate does not do: rate_hz must be between 48000 and 2.5e+07 Hz; it is 4000",
+                      "report.wav", "out.ci16", "--rate", "4000")
         done = self.run_program("mb-transmit", "--from", "report.wav", "--to", "out.ci16", "--rate", "48000",
                                 "--offset", "30kHz")
         self.assertEqual(done.status, 2)
