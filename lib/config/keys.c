@@ -59,7 +59,7 @@ const config_key config_keys[] = {
 
     KEY("transmit.offset", "0 Hz", QUANTITY(MB_UNIT_HZ, -10e6, 10e6),
         .meaning = "frequency of the suppressed carrier from the centre of the output"),
-    KEY("transmit.low_cut", "300 Hz", QUANTITY(MB_UNIT_HZ, 50, 1000),
+    KEY("transmit.low_cut", "300 Hz", QUANTITY(MB_UNIT_HZ, 100, 1000),
         .meaning = "lower edge of the message"),
     KEY("transmit.high_cut", "2700 Hz", QUANTITY(MB_UNIT_HZ, 1000, 6000),
         .meaning = "upper edge of the message; half the bandwidth of the emission"),
@@ -100,7 +100,7 @@ const config_key config_keys[] = {
         .meaning = "sample rate of the receiver inside"),
     KEY("receive.offset", "0 Hz", QUANTITY(MB_UNIT_HZ, -10e6, 10e6),
         .meaning = "where to look for the suppressed carrier, from the centre of the input"),
-    KEY("receive.span", "1 kHz", QUANTITY(MB_UNIT_HZ, 50, 10e3),
+    KEY("receive.span", "1 kHz", QUANTITY(MB_UNIT_HZ, 50, 9.6e3),
         .meaning = "how far from there, to both sides"),
     KEY("receive.look_ahead", "60 ms", QUANTITY(MB_UNIT_S, 0, 5), .words = words_look_ahead,
         .meaning = "how much later signal helps the tracker; all: the whole recording"),
@@ -122,7 +122,7 @@ const config_key config_keys[] = {
         .meaning = "mute while the lock quality is low"),
     KEY("receive.squelch_quality", "0.3", QUANTITY(MB_UNIT_NUMBER, 0, 1),
         .meaning = "lock quality below which the squelch mutes"),
-    KEY("receive.level", "-20 dBFS", QUANTITY(MB_UNIT_DBFS, -60, 0),
+    KEY("receive.level", "-20 dBFS", QUANTITY(MB_UNIT_DBFS, -60, -6),
         .meaning = "level of active speech that the gain control aims at"),
 
     KEY("channel.noise", "off", QUANTITY(MB_UNIT_DB, -20, 100), .words = words_off,

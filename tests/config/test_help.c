@@ -31,7 +31,7 @@ static void the_help_names_every_key(void **state)
         (void)snprintf(line, sizeof line, "\n  %s ", mb_config_key_name(i));
         assert_non_null(strstr(help, line));
     }
-    assert_non_null(strstr(help, "  transmit.low_cut                 300 Hz     (50 Hz to 1 kHz)\n"
+    assert_non_null(strstr(help, "  transmit.low_cut                 300 Hz     (100 Hz to 1 kHz)\n"
                                  "      lower edge of the message\n"));
     assert_non_null(strstr(help, "(off, all, or 0 s to 5 s)"));
     free(help);

@@ -106,7 +106,7 @@ static void ends_of_a_range_are_inside(void **state)
 
     (void)state;
     assert_ok(mb_config_set(config, "receive.span=50Hz"));
-    assert_ok(mb_config_set(config, "receive.span=10kHz"));
+    assert_ok(mb_config_set(config, "receive.span=9.6kHz"));
     assert_ok(mb_config_set(config, "receive.look_ahead=0"));
     assert_ok(mb_config_set(config, "receive.look_ahead=5s"));
     assert_ok(mb_config_set(config, "channel.quantise=16"));
