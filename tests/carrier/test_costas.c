@@ -227,6 +227,31 @@ static void a_steered_loop_is_locked_at_once(void **state)
     mb_costas_destroy(loop);
 }
 
+/* Lock quality of a locked loop is snr/(1 + snr), snr in the whole baseband (FACTS.md C: 0 dB 0.5, 10 dB
+ * 0.90909, 20 dB 0.99010); 4 s of a white message give its mean to 0.005. */
+static void lock_quality_is_that_of_theory(void **state)
+{
+    static const double rows[][2] = {{0.0, 0.5}, {10.0, 0.90909}, {20.0, 0.99010}};
+    mb_costas_settings settings = plain_loop(0.5);
+    const signal_carrier carrier = {0.0, 0.0, 0.0};
+
+    (void)state;
+    print_message("seeds 161, 162\n");
+    settings.energy_time_s = 1.0;
+    for (size_t i = 0; i < 3; i++) {
+        const double in_band_db = rows[i][0] + 10.0 * log10(SIGNAL_RATE_HZ / SIGNAL_BAND_HZ);
+        mb_costas *loop = make_loop(&settings);
+        signal_white(message, 64000, 161);
+        signal_dsb(message, 64000, &carrier, baseband);
+        signal_add_noise(baseband, 64000, 1.0, in_band_db, 162);
+        mb_costas_process(loop, baseband, 64000, rotated);
+        double quality = mb_costas_state_get(loop).lock_quality;
+        assert_near(quality, rows[i][1], 0.02);
+        assert_near(mb_theory_lock_quality(0.0, mb_db_power(rows[i][0])), rows[i][1], 1e-5);
+        mb_costas_destroy(loop);
+    }
+}
+
 /* The error is divided by the energy: the track is the same from -70 dBFS to full scale, bar rounding. */
 static void the_level_does_not_matter(void **state)
 {
@@ -257,6 +282,7 @@ int main(void)
         cmocka_unit_test(a_gate_of_zero_never_holds),
         cmocka_unit_test(the_frequency_stays_within_its_clamp),
         cmocka_unit_test(a_steered_loop_is_locked_at_once),
+        cmocka_unit_test(lock_quality_is_that_of_theory),
         cmocka_unit_test(the_level_does_not_matter),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);

@@ -25,7 +25,8 @@ static double muted_share(size_t count, mb_carrier_state *last)
         muted += last->mode == MB_CARRIER_SEARCH || last->mode == MB_CARRIER_LOST ? 1 : 0;
     }
     mb_recovery_destroy(recovery);
-    return (double)muted / (double)(count / BLOCK);
+    const size_t blocks = count / BLOCK;
+    return (double)muted / (double)blocks;
 }
 
 static void assert_never_locks(size_t count)

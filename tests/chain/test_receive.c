@@ -5,13 +5,13 @@
 #include "mirrorband/measure.h"
 #include "stage_cuts.h"
 
-enum { SECONDS = 6 };
+enum { SECONDS = 6, MESSAGE = SECONDS * 8000 };
 
 /* A voice of 6 s at 8 kHz, transmitted at rate_hz, its carrier moved by offset_hz. */
 static passage voice_on_air(float *message, double rate_hz, double offset_hz)
 {
     mb_transmit_settings settings = plain_transmit(8000.0, rate_hz);
-    size_t count = SECONDS * 8000;
+    size_t count = MESSAGE;
 
     signal_voice_at(message, count, 8000.0, 121.0, 1001);
     passage p = transmit_all(&settings, message, count);
@@ -40,7 +40,7 @@ static mb_score_result score(const float *message, const float *audio, size_t co
 static void what_was_transmitted_is_received(void **state)
 {
     static const double rates[][2] = {{48e3, 137.0}, {240e3, -820.0}, {2.4e6, 440.0}};
-    static float message[SECONDS * 8000];
+    static float message[MESSAGE];
 
     (void)state;
     print_message("seed 1001\n");
@@ -53,7 +53,7 @@ static void what_was_transmitted_is_received(void **state)
         settings.rate_hz = rates[i][0];
         settings.audio_rate_hz = 8000.0;
         float *audio = receive_all(&settings, &p, &count, &last);
-        mb_score_result r = score(message, audio, count < SECONDS * 8000 ? count : SECONDS * 8000, 1.5);
+        mb_score_result r = score(message, audio, count < MESSAGE ? count : MESSAGE, 1.5);
         print_message("%g Hz: %.1f dB\n", rates[i][0], r.snr_db);
         assert_at_least(r.snr_db, 40.0);
         assert_int_equal(r.polarity_changes, 0);
@@ -85,7 +85,7 @@ static void the_delay_by_default_is_at_most_120_ms(void **state)
 /* The carrier lies 20 kHz from the centre: it is looked for there, and told from the centre of the input. */
 static void a_carrier_far_from_the_centre_is_found_where_it_is_said_to_be(void **state)
 {
-    static float message[SECONDS * 8000];
+    static float message[MESSAGE];
     mb_receive_settings settings = mb_receive_settings_default();
     passage p = voice_on_air(message, 240e3, 20333.0);
     mb_receive_state last;
@@ -104,7 +104,7 @@ static void a_carrier_far_from_the_centre_is_found_where_it_is_said_to_be(void *
 /* One sideband alone, and the Costas loop, receive the same message. */
 static void other_detectors_and_trackers_receive_it_too(void **state)
 {
-    static float message[SECONDS * 8000];
+    static float message[MESSAGE];
     passage p = voice_on_air(message, 48e3, -55.0);
 
     (void)state;
@@ -116,7 +116,7 @@ static void other_detectors_and_trackers_receive_it_too(void **state)
         settings.sideband = way == 0 ? MB_SIDEBAND_UPPER : way == 1 ? MB_SIDEBAND_LOWER : MB_SIDEBAND_BOTH;
         settings.tracker = way == 2 ? MB_TRACKER_COSTAS : MB_TRACKER_KALMAN;
         float *audio = receive_all(&settings, &p, &count, &last);
-        mb_score_result r = score(message, audio, count < SECONDS * 8000 ? count : SECONDS * 8000, 1.5);
+        mb_score_result r = score(message, audio, count < MESSAGE ? count : MESSAGE, 1.5);
         assert_at_least(r.snr_db, 35.0);
         free(audio);
     }
@@ -146,7 +146,7 @@ static void noise_is_muted(void **state)
 /* Both act on the audio: the level is that asked for, and the squelch opens with the voice. */
 static void gain_control_and_squelch_are_in_the_chain(void **state)
 {
-    static float message[SECONDS * 8000];
+    static float message[MESSAGE];
     mb_receive_settings settings = mb_receive_settings_default();
     passage p = voice_on_air(message, 48e3, 10.0);
     mb_receive_state last;
@@ -178,7 +178,7 @@ static void reset_receive(void *stage)
 
 static void the_output_does_not_depend_on_the_cuts(void **state)
 {
-    static float message[SECONDS * 8000];
+    static float message[MESSAGE];
     mb_receive_settings settings = mb_receive_settings_default();
     passage p = voice_on_air(message, 48e3, 333.0);
     mb_receive *receive = NULL;
@@ -199,7 +199,7 @@ static void the_output_does_not_depend_on_the_cuts(void **state)
 /* The 16-bit path against the float path on the same samples: -90 dB. */
 static void sixteen_bit_samples_give_the_same_audio(void **state)
 {
-    static float message[SECONDS * 8000];
+    static float message[MESSAGE];
     mb_receive_settings settings = mb_receive_settings_default();
     passage p = voice_on_air(message, 240e3, 333.0);
     mb_ci16 *words = calloc(p.count, sizeof *words);

@@ -27,7 +27,8 @@ static void any_level_is_brought_to_the_one_wanted(void **state)
     (void)state;
     print_message("seeds 701, 702\n");
     for (int kind = 0; kind < 3; kind++) {
-        for (double level_db = -60.0; level_db <= 0.0; level_db += 20.0) {
+        for (int step = 0; step < 4; step++) {
+            double level_db = -60.0 + 20.0 * (double)step;
             mb_gain_control *control = make_control();
             signal_voice(input, COUNT, 120.0, 701);
             if (kind == 1) {
