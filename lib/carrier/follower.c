@@ -95,11 +95,6 @@ double follower_middle(const follower *f, uint64_t block)
     return (double)block * (double)f->block + 0.5 * ((double)f->block - 1.0) - (double)f->meter.delay;
 }
 
-double nearest_branch(double phase_rad, double target_rad)
-{
-    return phase_rad + MB_PI * nearbyint((target_rad - phase_rad) / MB_PI);
-}
-
 static void forget_old_agreement(follower *f)
 {
     acquisition_reset(&f->acquisition);

@@ -11,6 +11,7 @@
 
 #include "acquisition.h"
 #include "block_meter.h"
+#include "branch.h"
 
 /** What is known about one block. */
 typedef struct knot {
@@ -83,8 +84,5 @@ double follower_middle(const follower *follower, uint64_t block);
 
 /** State for the user, from the newest knot. */
 mb_carrier_state follower_state(const follower *follower);
-
-/** phase + the multiple of pi that brings it nearest to target. */
-double nearest_branch(double phase_rad, double target_rad);
 
 #endif

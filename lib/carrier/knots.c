@@ -8,14 +8,14 @@ enum { LONGEST_LOOK_BACK = 500 }; /* knots behind a pause that say how the voice
 
 knot *knot_list_at(const knot_list *list, size_t index)
 {
-    return &list->pieces[index / KNOTS_PER_PIECE][index % KNOTS_PER_PIECE];
+    return &list->pieces[index / KNOTS_PER_PIECE].knots[index % KNOTS_PER_PIECE];
 }
 
 static bool add_piece(knot_list *list)
 {
     if (list->piece_count == list->piece_room) {
         size_t room = list->piece_room > 0 ? 2 * list->piece_room : 64;
-        knot **pieces = mb_allocate(room, sizeof *pieces);
+        knot_piece *pieces = mb_allocate(room, sizeof *pieces);
         if (pieces == NULL) {
             return false;
         }
@@ -30,7 +30,7 @@ static bool add_piece(knot_list *list)
     if (piece == NULL) {
         return false;
     }
-    list->pieces[list->piece_count++] = piece;
+    list->pieces[list->piece_count++].knots = piece;
     return true;
 }
 
@@ -48,7 +48,7 @@ bool knot_list_reserve(knot_list *list, size_t count)
 void knot_list_free(knot_list *list)
 {
     for (size_t i = 0; i < list->piece_count; i++) {
-        mb_release(list->pieces[i]);
+        mb_release(list->pieces[i].knots);
     }
     mb_release(list->pieces);
     *list = (knot_list){0};

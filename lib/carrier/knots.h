@@ -4,9 +4,14 @@
 
 #include "follower.h"
 
-/** Grows in pieces, so that nothing is ever copied. */
+/** A run of KNOTS_PER_PIECE knots. */
+typedef struct knot_piece {
+    knot *knots;
+} knot_piece;
+
+/** Grows in pieces, so that no knot is ever copied. */
 typedef struct knot_list {
-    knot **pieces;
+    knot_piece *pieces;
     size_t piece_count, piece_room;
     size_t count;
 } knot_list;

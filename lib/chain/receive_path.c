@@ -10,7 +10,7 @@ static bool differ(double a, double b)
     return a < b || a > b;
 }
 
-mb_status receive_settings_check(const mb_receive_settings *s)
+static mb_status check_settings(const mb_receive_settings *s)
 {
     if (mb_check_range("rate_hz", s->rate_hz, 8000.0, 25e6, "Hz") != MB_OK ||
         mb_check_range("offset_hz", s->offset_hz, -0.5 * s->rate_hz, 0.5 * s->rate_hz, "Hz") != MB_OK ||
@@ -26,7 +26,7 @@ mb_status receive_settings_check(const mb_receive_settings *s)
     return MB_OK;
 }
 
-double receive_baseband_rate_hz(const mb_receive_settings *s)
+static double baseband_rate_hz(const mb_receive_settings *s)
 {
     double needed = fmax(fmax(2.1 * (s->high_hz + s->span_hz), s->span_hz / 0.2), s->high_hz / 0.4);
     double rate = s->baseband_rate_hz * ceil(needed / s->baseband_rate_hz);
@@ -50,11 +50,11 @@ double receive_baseband_rate_hz(const mb_receive_settings *s)
     return rate;
 }
 
-mb_recovery_settings receive_recovery_settings(const mb_receive_settings *s, double baseband_rate_hz)
+static mb_recovery_settings recovery_settings(const mb_receive_settings *s, double rate_hz)
 {
     mb_recovery_settings recovery = mb_recovery_settings_default();
 
-    recovery.rate_hz = baseband_rate_hz;
+    recovery.rate_hz = rate_hz;
     recovery.span_hz = s->span_hz;
     recovery.low_cut_hz = fmin(1.2 * s->low_hz, s->low_hz + 50.0);
     recovery.high_cut_hz = fmax(s->high_hz - 50.0, 1000.0);
@@ -65,14 +65,14 @@ mb_recovery_settings receive_recovery_settings(const mb_receive_settings *s, dou
     return recovery;
 }
 
-mb_status receive_front_create(const mb_receive_settings *s, double baseband_rate_hz, mb_decimator **out)
+static mb_status create_front(const mb_receive_settings *s, double rate_hz, mb_decimator **out)
 {
     mb_decimator_settings down = mb_decimator_settings_default();
 
     down.rate_in_hz = s->rate_hz;
-    down.rate_out_hz = baseband_rate_hz;
+    down.rate_out_hz = rate_hz;
     down.offset_hz = s->offset_hz;
-    down.passband_hz = fmin(s->high_hz + s->span_hz, 0.45 * baseband_rate_hz);
+    down.passband_hz = fmin(s->high_hz + s->span_hz, 0.45 * rate_hz);
     return mb_decimator_create(&down, out);
 }
 
@@ -107,7 +107,17 @@ static mb_status create_levels(const mb_receive_settings *s, double rate_hz, rec
     return status;
 }
 
-mb_status receive_back_create(const mb_receive_settings *s, double rate_hz, size_t room, receive_back *out)
+static void destroy_back(receive_back *back)
+{
+    mb_coherent_destroy(back->coherent);
+    mb_gain_control_destroy(back->gain_control);
+    mb_squelch_destroy(back->squelch);
+    mb_resampler_destroy(back->resampler);
+    mb_release(back->audio);
+    *back = (receive_back){0};
+}
+
+static mb_status create_back(const mb_receive_settings *s, double rate_hz, size_t room, receive_back *out)
 {
     *out = (receive_back){.room = room};
     mb_status status = create_detector(s, rate_hz, out);
@@ -126,22 +136,12 @@ mb_status receive_back_create(const mb_receive_settings *s, double rate_hz, size
         status = mb_fail(MB_ERROR_MEMORY, "", "no memory for the receive chain");
     }
     if (status != MB_OK) {
-        receive_back_destroy(out);
+        destroy_back(out);
         return status;
     }
     out->delay_s = (double)mb_coherent_delay_samples(out->coherent) / rate_hz +
                    (out->resampler != NULL ? mb_resampler_delay_s(out->resampler) : 0.0);
     return MB_OK;
-}
-
-void receive_back_destroy(receive_back *back)
-{
-    mb_coherent_destroy(back->coherent);
-    mb_gain_control_destroy(back->gain_control);
-    mb_squelch_destroy(back->squelch);
-    mb_resampler_destroy(back->resampler);
-    mb_release(back->audio);
-    *back = (receive_back){0};
 }
 
 void receive_back_reset(receive_back *back)
@@ -185,4 +185,38 @@ size_t receive_back_process(receive_back *back, const mb_cf32 *in, size_t n, flo
         mb_squelch_process(back->squelch, to, n, to);
     }
     return back->resampler != NULL ? mb_resampler_process_f32(back->resampler, to, n, audio) : n;
+}
+
+mb_status receive_path_create(const mb_receive_settings *settings, receive_path *out)
+{
+    *out = (receive_path){.settings = *settings};
+    if (check_settings(settings) != MB_OK) {
+        return MB_ERROR_ARGUMENT;
+    }
+    double rate_hz = baseband_rate_hz(settings);
+    if (rate_hz <= 0.0) {
+        return MB_ERROR_ARGUMENT;
+    }
+    out->baseband_rate_hz = rate_hz;
+    out->recovery = recovery_settings(settings, rate_hz);
+    mb_status status = create_front(settings, rate_hz, &out->front);
+    if (status == MB_OK) {
+        size_t room = mb_decimator_output_bound(out->front, WIDEBAND_CHUNK);
+        out->baseband = mb_allocate(room, sizeof *out->baseband);
+        status = out->baseband != NULL ? create_back(settings, rate_hz, room, &out->back)
+                                       : mb_fail(MB_ERROR_MEMORY, "", "no memory for the receive chain");
+    }
+    if (status != MB_OK) {
+        receive_path_destroy(out);
+    }
+    return status;
+}
+
+void receive_path_destroy(receive_path *path)
+{
+    mb_decimator_destroy(path->front);
+    destroy_back(&path->back);
+    mb_release(path->baseband);
+    path->front = NULL;
+    path->baseband = NULL;
 }
