@@ -17,6 +17,7 @@ static double muted_share(size_t count, mb_carrier_state *last)
     mb_recovery *recovery = NULL;
     size_t muted = 0;
 
+    *last = (mb_carrier_state){.mode = MB_CARRIER_SEARCH};
     assert_ok(mb_recovery_create(&settings, &recovery));
     delay_now = mb_recovery_delay_samples(recovery);
     for (size_t at = 0; at + BLOCK <= count; at += BLOCK) {

@@ -86,6 +86,29 @@ static void what_was_transmitted_is_received(void **state)
     }
 }
 
+/* Nothing to decimate: the input already has the rate of the baseband inside. */
+static void samples_at_the_baseband_rate_are_taken_as_they_are(void **state)
+{
+    const signal_carrier carrier = {-333.0, 0.2, 1.0};
+    const size_t count = signal_samples(SECONDS);
+    mb_receive_settings settings = mb_receive_settings_default();
+    mb_receive_state summary;
+    passage p = {calloc(count, sizeof(mb_cf32)), count};
+    size_t got;
+
+    (void)state;
+    print_message("seeds 1131, 1132\n");
+    signal_voice(message, count, 109.0, 1131);
+    signal_noisy_voice(message, count, &carrier, 30.0, 1132, p.samples);
+    settings.rate_hz = SIGNAL_RATE_HZ;
+    float *audio = record_all(&settings, &p, &got, &summary);
+    assert_int_equal(got, count);
+    assert_near(passage_lag(message, audio, count, 4), 0.0, 0.5);
+    assert_near(summary.carrier.carrier_offset_hz, -333.0 + 0.2 * 0.5 * SECONDS, 0.1);
+    free(audio);
+    free(p.samples);
+}
+
 /* Both passes cut at random give the bits of whole passes. */
 static void the_audio_does_not_depend_on_the_cuts(void **state)
 {
@@ -264,6 +287,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(every_sample_comes_back_to_its_place),
         cmocka_unit_test(what_was_transmitted_is_received),
+        cmocka_unit_test(samples_at_the_baseband_rate_are_taken_as_they_are),
         cmocka_unit_test(the_audio_does_not_depend_on_the_cuts),
         cmocka_unit_test(sixteen_bit_samples_give_the_same_audio),
         cmocka_unit_test(the_track_tells_time_and_offset_of_the_input),
