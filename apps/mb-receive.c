@@ -19,7 +19,7 @@ enum { BLOCKS_PER_S = 100, BLOCK_MAX = 65536 };
 static const double room_db = 2.0;
 
 /* Live, in integers: where the loudest 10 ms heard up to the first lock come to lie. */
-static const double live_level_dbfs = -28.0;
+static const double live_level_dbfs = -25.0;
 
 static double rate_hz;
 static uint64_t iq_channel;

@@ -1,4 +1,5 @@
 /* mb-transmit - audio to a double-sideband suppressed-carrier emission. */
+#include <math.h>
 #include <stdio.h>
 #include <string.h>
 
@@ -201,11 +202,18 @@ static void remarks(const transmission *job)
     }
 }
 
+static double four_digits(double value)
+{
+    double unit = value > 0.0 ? pow(10.0, floor(log10(value)) - 3.0) : 1.0;
+
+    return round(value / unit) * unit;
+}
+
 static void print_watts(FILE *stream, const char *what, double level_db, double full_scale_w)
 {
     char text[64];
 
-    mb_quantity_print(full_scale_w * mb_db_power(level_db), MB_UNIT_W, text, sizeof text);
+    mb_quantity_print(four_digits(full_scale_w * mb_db_power(level_db)), MB_UNIT_W, text, sizeof text);
     (void)fprintf(stream, "  %-15s %s\n", what, text);
 }
 

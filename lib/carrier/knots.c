@@ -149,6 +149,7 @@ static bool filter_forward(const pass *p, size_t first)
     for (size_t i = first; i < p->list->count; i++) {
         knot *at = knot_list_at(p->list, i);
         if (at->restart && i > first) {
+            sure = false; /* what lies between two locks says nothing of the polarity */
             double before = at->filtered.phase_rad;
             state = restart_state(at, &state);
             branch = state.phase_rad - before;

@@ -10,6 +10,9 @@
 #define FLOOR_QUANTILE       0.25
 #define FLOOR_QUANTILE_VALUE 0.28768207245178085
 
+/* Least power in the band, mean square: fainter is not a signal but what a filter let through of one. */
+#define LEAST_POWER 1e-12
+
 /* Probability that one look at noise passes for a signal by its coherence. */
 #define FALSE_ALARM 1e-7
 
@@ -18,7 +21,8 @@ struct mb_sighter {
     size_t length;     /* samples in a stretch */
     size_t fft_length; /* with zeros behind them */
     mb_fft *fft;
-    float *weight; /* Hann window: of powers; its root: of amplitudes */
+    double weights; /* sum of the weights of powers */
+    float *weight;  /* Hann window: of powers; its root: of amplitudes */
     float *root_weight;
     mb_cf32 *square;   /* spectrum of the squared signal */
     mb_cf32 *spectrum; /* spectrum of the signal */
@@ -85,6 +89,7 @@ mb_status mb_sighter_create(const mb_sighting_settings *settings, mb_sighter **o
         double root = sin(MB_PI * ((double)i + 0.5) / (double)sighter->length);
         sighter->root_weight[i] = (float)root;
         sighter->weight[i] = (float)(root * root);
+        sighter->weights += root * root;
     }
     *out = sighter;
     return MB_OK;
@@ -288,8 +293,9 @@ static mb_sighting examine(mb_sighter *s, const mb_cf32 *samples, double energy,
     seen.purity = seen.coherence / fmax(seen.occupied, 0.05);
     seen.centre_share = powers.centre / band;
     seen.snr_db = mb_power_db(line / fmax(band_energy - line, 1e-6 * band_energy));
+    bool there = band_energy >= LEAST_POWER * s->weights;
     bool above_noise = line / energy >= noise_coherence(s, samples, energy);
-    seen.accepted = above_noise && seen.coherence >= settings->coherence_min &&
+    seen.accepted = there && above_noise && seen.coherence >= settings->coherence_min &&
                     seen.purity >= settings->purity_min && seen.centre_share <= settings->centre_share_max;
     return seen;
 }
