@@ -18,8 +18,8 @@ enum { BLOCKS_PER_S = 100, BLOCK_MAX = 65536 };
 /* Room left above the highest envelope of a recording, for what the audio filter may add to it. */
 static const double room_db = 2.0;
 
-/* Live, in integers: where the loudest 10 ms heard up to the first lock come to lie. */
-static const double live_level_dbfs = -25.0;
+/* Live, in integers: room for noise on top of a signal near full scale. */
+static const double live_gain_db = -6.0;
 
 static double rate_hz;
 static uint64_t iq_channel;
@@ -68,7 +68,7 @@ static const app_option options[] = {
      .key = "audio.rate"},
     {.name = "audio-format",
      .argument = "WORD",
-     .meaning = "samples of the audio: s16, s24 or f32 (s16 in files)",
+     .meaning = "samples of the audio: s16, s24 or f32 (s24 in files)",
      .kind = APP_TEXT,
      .target = (void *)&audio_format},
     {.name = "track",
@@ -103,7 +103,6 @@ typedef struct reception {
     float *audio;
     size_t audio_bound;
     double audio_rate_hz;
-    bool integer; /* the audio written has a full scale */
     bool gain_chosen;
     float gain; /* of the audio, one for all of it */
     double gain_db;
@@ -147,6 +146,13 @@ static int create_chain(reception *job)
     return job->samples != NULL && job->audio != NULL ? APP_CONTINUE : app_fail(&program, MB_ERROR_MEMORY);
 }
 
+static void set_gain(reception *job, double gain_db)
+{
+    job->gain_db = gain_db;
+    job->gain = (float)pow(10.0, gain_db / 20.0);
+    job->gain_chosen = true;
+}
+
 static int create_outputs(reception *job)
 {
     mb_audio_writer_settings settings = mb_audio_writer_settings_default();
@@ -157,7 +163,13 @@ static int create_outputs(reception *job)
     if (audio_format == NULL && app_is_pipe(job->common->to)) {
         return app_usage_error(&program, "--audio-format is missing: a pipe holds raw audio, s16 or f32");
     }
-    job->integer = settings.format != MB_AUDIO_F32;
+    if (audio_format == NULL) {
+        settings.format = MB_AUDIO_S24; /* a faint signal is not coarsened, and everything plays it */
+    }
+    if (!job->whole && settings.format != MB_AUDIO_F32 &&
+        !mb_config_switch(job->common->config, "receive.gain_control")) {
+        set_gain(job, live_gain_db);
+    }
     settings.rate_hz = job->audio_rate_hz;
     mb_status status = mb_audio_writer_create(job->common->to, &settings, &job->writer);
     if (status == MB_OK) {
@@ -194,32 +206,12 @@ static mb_status put(reception *job, size_t made)
     return mb_audio_writer_write(job->writer, job->audio, made);
 }
 
-static void set_gain(reception *job, double gain_db)
-{
-    job->gain_db = gain_db;
-    job->gain = (float)pow(10.0, gain_db / 20.0);
-    job->gain_chosen = true;
-}
-
-/* Integers would clip or coarsen what comes at any level: the first lock sets one gain for all that follows.
- * The audio of that moment is still inside the chain. */
-static void choose_live_gain(reception *job)
-{
-    const mb_carrier_state *carrier = &job->state.carrier;
-    bool wanted = job->integer && !mb_config_switch(job->common->config, "receive.gain_control");
-
-    if (wanted && !job->gain_chosen && carrier->locks > 0) {
-        set_gain(job, round(live_level_dbfs - carrier->loudest_dbfs));
-    }
-}
-
 static mb_status receive_samples(reception *job, size_t count)
 {
     size_t made = job->native ? mb_receive_process_ci16(job->live, job->samples, count, job->audio)
                               : mb_receive_process_cf32(job->live, job->samples, count, job->audio);
 
     job->state = mb_receive_state_now(job->live);
-    choose_live_gain(job);
     return put(job, made);
 }
 

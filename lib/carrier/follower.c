@@ -67,7 +67,6 @@ void follower_reset(follower *f)
     f->count = 0;
     f->tracking = f->has_old_state = f->polarity_uncertain = false;
     f->noise_power = f->active_i = f->active_q = f->active_energy = f->active_noise = 0.0;
-    f->loudest_power = 0.0;
     f->surprise = 1.0;
     f->idle_blocks = f->doubts = f->rivals = 0;
     f->confirmations = f->contradictions = 0;
@@ -202,10 +201,7 @@ size_t follower_take(follower *f, const mb_cf32 *block)
 
 mb_carrier_state follower_state(const follower *f)
 {
-    mb_carrier_state state = {.mode = MB_CARRIER_SEARCH,
-                              .in_phase_dbfs = -400.0,
-                              .quadrature_dbfs = -400.0,
-                              .loudest_dbfs = -400.0};
+    mb_carrier_state state = {.mode = MB_CARRIER_SEARCH, .in_phase_dbfs = -400.0, .quadrature_dbfs = -400.0};
 
     if (f->count == 0) {
         return state;
@@ -223,7 +219,6 @@ mb_carrier_state follower_state(const follower *f)
     state.lock_quality = (double)newest->quality;
     state.snr_db = (double)newest->snr_db;
     state.active_s = (double)f->active_blocks * f->block_s;
-    state.loudest_dbfs = mb_power_db(f->loudest_power);
     state.locks = f->locks;
     state.holds = f->holds;
     state.polarity_uncertain = f->polarity_uncertain;

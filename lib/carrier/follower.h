@@ -52,7 +52,6 @@ typedef struct follower {
     double noise_power;        /* per arm and sample, while tracking */
     double active_i, active_q; /* decaying sums over active speech */
     double active_energy, active_noise;
-    double loudest_power; /* of the in-phase arm in an active block, per sample */
     double surprise;      /* running mean of normalised squared innovations */
     bool heard;           /* the track has had an update */
     unsigned idle_blocks; /* since the last update */

@@ -105,7 +105,6 @@ static void note_active(follower *f, const block_reading *reading, double real_p
     f->active_q = keep * f->active_q + 0.5 * (reading->energy - real_part);
     f->active_energy = keep * f->active_energy + fmax(real_part, 0.0);
     f->active_noise = keep * f->active_noise + 2.0 * f->noise_power * (double)f->block;
-    f->loudest_power = fmax(f->loudest_power, 0.5 * (reading->energy + real_part) / (double)f->block);
     f->active_blocks++;
 }
 

@@ -98,7 +98,7 @@ class Endpoints(programs.Case):
         # loud enough to hear at once, and never at the ceiling
         self.assertGreater(numpy.max(numpy.abs(audio)), 0.1)
         self.assertLess(numpy.max(numpy.abs(audio)), 0.99)
-        for more, subformat in ((), b"Bit Width     : 16"), (("--audio-format", "f32"), b"IEEE_FLOAT"):
+        for more, subformat in ((), b"Bit Width     : 24"), (("--audio-format", "f32"), b"IEEE_FLOAT"):
             self.succeed("mb-receive", "--from", "air.cf32", "--rate", "48000", "--to", "heard.wav", *more)
             kind = subprocess.run(["sndfile-info", "heard.wav"], cwd=self.folder, capture_output=True, check=True)
             self.assertIn(subformat, kind.stdout)

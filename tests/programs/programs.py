@@ -91,11 +91,13 @@ def write_wave(path, samples, rate=8000):
 
 
 def read_wave(path):
-    """Samples as float, of 16-bit integers or 32-bit floats, and the rate."""
+    """Samples as float, of integers of 16 or 24 bits or 32-bit floats, and the rate."""
     with warnings.catch_warnings():
         warnings.simplefilter("ignore", scipy.io.wavfile.WavFileWarning)  # chunks beside the samples
         rate, samples = scipy.io.wavfile.read(path)
-    return (samples / 32768.0 if samples.dtype == numpy.int16 else samples.astype(float)), rate
+    # 24 bits come in the upper part of 32
+    scale = {"int16": 2.0**15, "int32": 2.0**31}.get(str(samples.dtype), 1.0)
+    return samples / scale, rate
 
 
 def write_cf32(path, samples):

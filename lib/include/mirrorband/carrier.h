@@ -144,7 +144,6 @@ typedef struct mb_carrier_state {
     double snr_db;          /* estimate over active speech, noise in 2 x high_cut */
     double in_phase_dbfs;   /* power of the arms in the last block */
     double quadrature_dbfs;
-    double loudest_dbfs;     /* highest power of the in-phase arm in a block of tracked voice so far */
     double active_s;         /* time with tracked voice so far */
     uint64_t locks;          /* times it went from search or lost to locked */
     uint64_t holds;          /* pauses carried over */
