@@ -2,6 +2,9 @@
 
 #include <math.h>
 
+#define QUIET_RISE 0.02 /* per averaging time of the energy: doubles in 35 of them */
+#define WARM       0.99 /* of the averages; before, the floor is the energy */
+
 struct mb_costas {
     mb_costas_settings settings;
     double gain_phase;     /* rad per unit of error and sample */
@@ -12,6 +15,7 @@ struct mb_costas {
     double energy;   /* averaged |z|^2 */
     double quiet;    /* its floor: falls at once, rises slowly */
     double quality;  /* averaged I^2 - Q^2 */
+    double warmth;   /* average of ones: how far the averages have settled, 0 to 1 */
     bool holding;
 };
 
@@ -57,7 +61,7 @@ mb_status mb_costas_create(const mb_costas_settings *settings, mb_costas **out)
 
 void mb_costas_reset(mb_costas *costas)
 {
-    costas->phase_rad = costas->energy = costas->quiet = costas->quality = 0.0;
+    costas->phase_rad = costas->energy = costas->quiet = costas->quality = costas->warmth = 0.0;
     costas->step_rad = 2.0 * MB_PI * costas->settings.offset_hz / costas->settings.rate_hz;
     costas->holding = false;
 }
@@ -81,12 +85,15 @@ static void follow_energy(mb_costas *costas, double i, double q)
 
     costas->energy += fresh * (i * i + q * q - costas->energy);
     costas->quality += fresh * (i * i - q * q - costas->quality);
-    if (costas->energy < costas->quiet || costas->quiet == 0.0) {
+    costas->warmth += fresh * (1.0 - costas->warmth);
+    if (costas->energy < costas->quiet || costas->warmth < WARM) {
         costas->quiet = costas->energy;
     } else {
-        costas->quiet *= 1.0 + 0.02 * fresh; /* doubles in 35 averaging times */
+        costas->quiet *= 1.0 + QUIET_RISE * fresh;
     }
-    costas->holding = costas->energy <= costas->settings.gate * costas->quiet;
+    /* what mirrors about the loop's phase is no pause, however long it has been steady */
+    bool mirrors = costas->quality > 0.5 * costas->energy;
+    costas->holding = !mirrors && costas->energy <= costas->settings.gate * costas->quiet;
 }
 
 static void advance(mb_costas *costas, double error)
