@@ -239,7 +239,7 @@ typedef struct mb_costas_settings {
     double offset_hz;         /* where the loop starts */
     double offset_limit_hz;   /* clamp of the frequency about 0; 0 = none */
     double energy_time_s;     /* averaging of the energy the error is normalised by, 1 ms to 1 s */
-    double gate;              /* holds while the energy is below gate x its quiet floor; 0 = never holds */
+    double gate; /* holds while the energy is below gate x its quiet floor and does not mirror; 0 = never */
 } mb_costas_settings;
 
 typedef struct mb_costas_state {
