@@ -55,6 +55,28 @@ typedef struct app_option {
     double low, high; /* APP_QUANTITY, APP_WHOLE: range; both 0 = any */
 } app_option;
 
+/** Entries that several programs share; each says in its own words what the option means there. */
+#define APP_RATE_OPTION(name_, meaning_, target_, high_)                                                     \
+    {                                                                                                        \
+        .name = (name_), .argument = "HZ", .meaning = (meaning_), .kind = APP_QUANTITY, .unit = MB_UNIT_HZ,  \
+        .target = (target_), .low = 1.0, .high = (high_)                                                     \
+    }
+#define APP_WORD_OPTION(name_, meaning_, target_)                                                            \
+    {                                                                                                        \
+        .name = (name_), .argument = "WORD", .meaning = (meaning_), .kind = APP_TEXT,                        \
+        .target = (void *)(target_)                                                                          \
+    }
+#define APP_KEY_OPTION(name_, argument_, meaning_, key_)                                                     \
+    {                                                                                                        \
+        .name = (name_), .argument = (argument_), .meaning = (meaning_), .kind = APP_KEY, .key = (key_)      \
+    }
+#define APP_IQ_CHANNEL_OPTION(target_)                                                                       \
+    {                                                                                                        \
+        .name = "iq-channel", .argument = "N",                                                               \
+        .meaning = "which I/Q pair of a recording with several, 1 the first", .kind = APP_WHOLE,             \
+        .target = (target_), .low = 1, .high = 64                                                            \
+    }
+
 /** A program. */
 typedef struct app_program {
     const char *name;    /* "mb-receive" */
