@@ -1,7 +1,7 @@
 /* The contract of a stage, for all of the carrier room: cuts, faults, lack of memory, NULL. */
 #include "signals.h"
 
-#include "filter/memory.h"
+#include "failing_memory.h"
 #include "mirrorband/carrier.h"
 #include "stage_cuts.h"
 

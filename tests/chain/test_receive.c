@@ -1,7 +1,7 @@
 /* Live reception: what was transmitted comes back, in time, and nothing else does. */
 #include "passages.h"
 
-#include "filter/memory.h"
+#include "failing_memory.h"
 #include "mirrorband/measure.h"
 #include "stage_cuts.h"
 

@@ -1,7 +1,7 @@
 /* Reception of whole recordings: what was transmitted comes back, sample for sample in its place. */
 #include "passages.h"
 
-#include "filter/memory.h"
+#include "failing_memory.h"
 #include "mirrorband/measure.h"
 
 enum { SECONDS = 3, MOST = SECONDS * 48000 + 100 };

@@ -1,7 +1,7 @@
 /* The transmit chain: alignment, lengths, and the contract of a stage. */
 #include "passages.h"
 
-#include "filter/memory.h"
+#include "failing_memory.h"
 #include "stage_cuts.h"
 
 enum { TONES = 4 };

@@ -1,7 +1,7 @@
 /* The coherent detector: its band, what a phase error costs, and one sideband against both. */
 #include "carrier/signals.h"
 #include "detect_reference.h"
-#include "filter/memory.h"
+#include "failing_memory.h"
 #include "mirrorband/detect.h"
 #include "mirrorband/measure.h"
 #include "stage_cuts.h"

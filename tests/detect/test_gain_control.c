@@ -1,6 +1,6 @@
 /* Gain control: the level that speech is brought to, hold in pauses, and the contract of a stage. */
 #include "carrier/signals.h"
-#include "filter/memory.h"
+#include "failing_memory.h"
 #include "mirrorband/detect.h"
 #include "stage_cuts.h"
 

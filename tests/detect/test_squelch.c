@@ -1,5 +1,5 @@
 /* Squelch on lock quality: hysteresis, hang, fades, and the contract of a stage. */
-#include "filter/memory.h"
+#include "failing_memory.h"
 #include "mirrorband/detect.h"
 #include "stage_cuts.h"
 

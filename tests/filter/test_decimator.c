@@ -1,7 +1,7 @@
 /* The decimator takes any part of any band to baseband: flat, on time, and free of what would fold into it.
  */
 #include "first_stage.h"
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 #include "stage_cuts.h"
 

@@ -1,6 +1,6 @@
 /* The transform is numpy's, and its inverse leads back. */
 #include "filter_reference.h"
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 
 enum { LENGTH = 60 };

@@ -1,6 +1,6 @@
 /* The FIR filter convolves as scipy does, for real and complex samples, and cuts do not matter. */
 #include "filter_reference.h"
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 #include "stage_cuts.h"
 

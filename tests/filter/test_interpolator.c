@@ -1,5 +1,5 @@
 /* The interpolator puts baseband anywhere in a wide band: flat, on time, and with no image left to see. */
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 #include "stage_cuts.h"
 

@@ -1,6 +1,6 @@
 /* The resampler gives what scipy's gives, at any pair of rates, without drift, images or aliases. */
 #include "filter_reference.h"
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 #include "stage_cuts.h"
 

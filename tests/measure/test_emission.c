@@ -1,6 +1,6 @@
 /* The analyser of emissions is tried first on signals whose figures are known. */
 #include "check.h"
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 #include "speech.h"
 

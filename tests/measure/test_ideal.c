@@ -1,6 +1,6 @@
 /* Ideal detection takes the true phase off exactly, and says when it has to wait for it. */
 #include "check.h"
-#include "memory.h"
+#include "failing_memory.h"
 
 #include "mirrorband/measure.h"
 

@@ -2,7 +2,7 @@
 #define MEASURE_REFERENCE_SCORES
 #include "check.h"
 #include "measure_reference.h"
-#include "memory.h"
+#include "failing_memory.h"
 
 #include "mirrorband/measure.h"
 

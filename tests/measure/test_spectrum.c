@@ -1,6 +1,6 @@
 /* The averaged spectrum weighs lines and noise rightly, and its windows are what they are called. */
 #include "check.h"
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 #include "window.h"
 

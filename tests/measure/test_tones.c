@@ -1,6 +1,6 @@
 /* Intermodulation and distortion of known polynomials are read as their closed forms say. */
 #include "check.h"
-#include "memory.h"
+#include "failing_memory.h"
 #include "signals.h"
 
 enum { RATE = 48000, COUNT = 96000 };

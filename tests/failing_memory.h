@@ -1,6 +1,6 @@
-/** memory.h - lets the k-th allocation fail, for every k, until a creation succeeds. */
-#ifndef TESTS_MEASURE_MEMORY_H
-#define TESTS_MEASURE_MEMORY_H
+/** failing_memory.h - lets the k-th allocation fail, for every k, until a creation succeeds. */
+#ifndef TESTS_FAILING_MEMORY_H
+#define TESTS_FAILING_MEMORY_H
 
 #include "check.h"
 
